@@ -1,0 +1,2 @@
+//! skeleton
+#![no_std]
