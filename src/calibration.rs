@@ -1,0 +1,138 @@
+//! What a calibration says of an element beyond A and B: how sure they are, how far they reach.
+//!
+//! Uncertainties are kept relative to A, so that no square of A (up to 1e20 1/m3 for one fine capillary) can
+//! overflow single precision: `u_A/A` without unit and `u_B/A` in metres, since `B x/A` is the kinetic share.
+
+use crate::error::{Error, within};
+use crate::quantity::Temperature;
+use heapless::Vec;
+
+/// Most common parts a record carries.
+pub const MOST_COMMON_PARTS: usize = 6;
+
+/// What all points of a calibration shared, so that it did not average away.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
+#[cfg_attr(feature = "serde", derive(serde::Serialize, serde::Deserialize), serde(rename_all = "kebab-case"))]
+pub enum Cause {
+    /// The reference flow standard.
+    ReferenceFlow,
+    /// The viscosity data of the calibration fluid; cancels when the same fluid is measured.
+    Viscosity,
+    /// The gain of the bench's pressure-drop sensor.
+    PressureDrop,
+    /// Density or line pressure on the bench.
+    Density,
+    /// The offset of the bench's thermometer.
+    Temperature,
+    /// The zero of the bench's pressure-drop sensor.
+    PressureDropZero,
+    /// Nominal geometry instead of a calibration.
+    Geometry,
+}
+
+impl Cause {
+    pub(crate) const ALL: [Self; 7] = [
+        Self::ReferenceFlow,
+        Self::Viscosity,
+        Self::PressureDrop,
+        Self::Density,
+        Self::Temperature,
+        Self::PressureDropZero,
+        Self::Geometry,
+    ];
+
+    /// The cause's name, lower case with hyphens.
+    pub const fn name(self) -> &'static str {
+        match self {
+            Self::ReferenceFlow => "reference-flow",
+            Self::Viscosity => "viscosity",
+            Self::PressureDrop => "pressure-drop",
+            Self::Density => "density",
+            Self::Temperature => "temperature",
+            Self::PressureDropZero => "pressure-drop-zero",
+            Self::Geometry => "geometry",
+        }
+    }
+}
+
+/// One common part: what one standard uncertainty of its cause does to A and B.
+#[derive(Debug, Clone, Copy, PartialEq)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
+#[cfg_attr(feature = "serde", derive(serde::Serialize, serde::Deserialize))]
+pub struct CommonPart {
+    /// What is shared.
+    pub cause: Cause,
+    /// Change of A over A.
+    pub effect_a: f32,
+    /// Change of B over A, m.
+    pub effect_b_m: f32,
+}
+
+/// How well A and B are known, and over what range.
+#[derive(Debug, Clone, PartialEq)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
+#[cfg_attr(feature = "serde", derive(serde::Serialize, serde::Deserialize))]
+pub struct Quality {
+    /// Standard uncertainty of A from the fit, over A.
+    pub u_a: f32,
+    /// Standard uncertainty of B from the fit, over A, m.
+    pub u_b_m: f32,
+    /// Correlation of A and B in the fit.
+    pub correlation: f32,
+    /// Degrees of freedom of the fit's scale; 0 when the points' uncertainties were stated beforehand.
+    pub degrees_of_freedom: f32,
+    /// Parts common to all points.
+    pub common: Vec<CommonPart, MOST_COMMON_PARTS>,
+    /// Smallest calibrated x = mdot/mu, m.
+    pub x_min_m: f32,
+    /// Largest calibrated x, m; 0 when there was no calibration.
+    pub x_max_m: f32,
+    /// Mean temperature of the calibration.
+    pub temperature_k: Temperature,
+}
+
+/// Rectangular limits of a nominal A and B, from the bores and slots a workshop delivers (common practice).
+const NOMINAL_LIMITS: [f32; 2] = [0.10, 0.30];
+/// 1/sqrt(3): a rectangular distribution's standard deviation over its half-width.
+const RECTANGULAR: f32 = 0.577_350_26;
+
+impl Quality {
+    /// What nominal geometry is worth: A within 10 %, B within 30 %, both rectangular.
+    pub fn nominal(a: f32, b: f32) -> Self {
+        let [limit_a, limit_b] = NOMINAL_LIMITS;
+        let parts = [(limit_a * RECTANGULAR, 0.0), (0.0, limit_b * RECTANGULAR * (b / a))];
+        Self {
+            u_a: 0.0,
+            u_b_m: 0.0,
+            correlation: 0.0,
+            degrees_of_freedom: 0.0,
+            common: parts
+                .into_iter()
+                .map(|(effect_a, effect_b_m)| CommonPart { cause: Cause::Geometry, effect_a, effect_b_m })
+                .collect(),
+            x_min_m: 0.0,
+            x_max_m: 0.0,
+            temperature_k: Temperature::from_celsius(20.0),
+        }
+    }
+
+    /// Accepts a statement whose every number makes sense, whatever its origin.
+    ///
+    /// # Errors
+    /// Names the field that is not finite or outside its limits.
+    pub fn check(&self) -> Result<(), Error> {
+        within("u of a (rel)", self.u_a, 0.0, 10.0)?;
+        within("u of b over a (m)", self.u_b_m, 0.0, 1e6)?;
+        within("correlation", self.correlation, -1.0, 1.0)?;
+        within("degrees of freedom", self.degrees_of_freedom, 0.0, 1e9)?;
+        within("largest x (m)", self.x_max_m, 0.0, 1e9)?;
+        within("smallest x (m)", self.x_min_m, 0.0, self.x_max_m)?;
+        within("calibration temperature (K)", self.temperature_k.as_kelvin(), 100.0, 1000.0)?;
+        for part in &self.common {
+            within("common effect on a (rel)", part.effect_a, -10.0, 10.0)?;
+            within("common effect on b over a (m)", part.effect_b_m, -1e6, 1e6)?;
+        }
+        Ok(())
+    }
+}

@@ -1,0 +1,94 @@
+//! The slow half: all that depends on temperature, line pressure and humidity, prepared once per change.
+
+use crate::element::Element;
+use crate::element::law::Prepared;
+use crate::fluid::StoredFluid;
+use crate::fluid::moist_air::{self, Moisture};
+use crate::fluid::properties::{PropertiesAt, outside};
+use crate::math::Real;
+use crate::status::Refusal;
+
+/// The fluid that carries humidity.
+const MOIST_FLUID: &str = "air";
+
+/// What flows, and the law for it, at one temperature and line pressure.
+#[derive(Debug, Clone, Copy)]
+pub(crate) struct State<F> {
+    pub law: Prepared<F>,
+    pub moisture: Moisture<F>,
+    pub temperature: F,
+    /// Density at the line pressure, kg/m3.
+    pub line_density: F,
+    /// Lowest and highest pressure of the fluid's table, Pa.
+    pub pressure_range: [F; 2],
+    /// 1/K.
+    pub element_expansion: F,
+}
+
+impl<F: Real> State<F> {
+    /// Prepares the law for `element` carrying `fluid` at `temperature` (K) and `line_pressure` (Pa).
+    ///
+    /// # Errors
+    /// Refuses a state outside the fluid's table, and a humidity that cannot be or is not of air.
+    pub fn new(
+        element: &Element,
+        fluid: &StoredFluid,
+        temperature: F,
+        line_pressure: F,
+        humidity: Option<F>,
+    ) -> Result<Self, Refusal> {
+        let refusal = outside(fluid, temperature, line_pressure);
+        if !refusal.is_empty() {
+            return Err(refusal);
+        }
+        let molar_mass = F::stored(fluid.molar_mass);
+        let moisture = match humidity {
+            Some(fraction) => moisture(fluid, fraction, temperature, line_pressure)?,
+            None => Moisture::none(),
+        };
+        let mut properties = PropertiesAt::new(fluid, temperature);
+        if humidity.is_some() {
+            properties.mu0 = properties.mu0 * moisture.viscosity_factor;
+            properties.base = properties.base * moisture.mass_factor;
+        }
+        let flowing_mass = molar_mass * moisture.mass_factor;
+        Ok(Self {
+            law: Prepared::new(element, properties, flowing_mass, temperature, line_pressure),
+            moisture,
+            temperature,
+            line_density: properties.density(line_pressure),
+            pressure_range: fluid.pressure_range.map(F::stored),
+            element_expansion: F::stored(element.expansion),
+        })
+    }
+
+    /// Refuses a pressure drop (Pa) whose outlet pressure the fluid's table cannot serve.
+    ///
+    /// # Errors
+    /// Not finite, outlet vacuum, or outside the table.
+    pub fn check(&self, drop: F) -> Result<(), Refusal> {
+        if !drop.finite() {
+            return Err(Refusal::NOT_FINITE);
+        }
+        let outlet = self.law.line_pressure - drop;
+        let [low, high] = self.pressure_range;
+        if outlet <= F::of(0.0) {
+            Err(Refusal::OUTLET_VACUUM)
+        } else if outlet < low || outlet > high {
+            Err(Refusal::PRESSURE_OUTSIDE_TABLE)
+        } else {
+            Ok(())
+        }
+    }
+}
+
+/// Moisture of air, or the reason why it cannot be.
+fn moisture<F: Real>(fluid: &StoredFluid, fraction: F, temperature: F, pressure: F) -> Result<Moisture<F>, Refusal> {
+    let [low, high] = moist_air::TEMPERATURE_RANGE.map(F::stored);
+    let possible = fraction >= F::of(0.0) && fraction <= F::of(1.0) && temperature >= low && temperature <= high;
+    if !possible || fluid.name() != MOIST_FLUID {
+        return Err(Refusal::HUMIDITY_INVALID);
+    }
+    let moisture = Moisture::new(fraction, temperature, pressure, F::stored(fluid.molar_mass));
+    if moisture.water <= F::of(moist_air::MOST_WATER) { Ok(moisture) } else { Err(Refusal::HUMIDITY_INVALID) }
+}

@@ -1,0 +1,129 @@
+//! Standard uncertainty of a flow, in closed form, in three parts (JCGM 100:2008, section 5).
+//!
+//! With eps the kinetic share, D = 1 + 2 eps, gam = (1 + eps)/D and s' = s/(1 + s), the law differentiated gives
+//!
+//! - `dln q/dln dP = gam (1 - dP/2pm) - eps Cexp/K1 l/(q D)`
+//! - `dln q/dT = (gam - 1) dln rho/dT - n/(T D) + (3 + 4 eps) alpha/D + s' (n + 1/2)/(T D)`
+//! - `dln q/dln p1 = gam p1/pm - 1 - s' p1/(pm D) + eps Cexp/K1 l p1/(pm q D) - k1 p1/D` (gas)
+//! - `dln q/dln mu = -1/D`, `dln q/dln A = -1/D`, `dln q/dB = -x/(A D)`
+//!
+//! for the volume flow q at line conditions. Against numerical derivatives: within 1 % of the largest of them
+//! (asserted in `tests/accuracy.rs`).
+
+use crate::calibration::{Cause, Quality};
+use crate::conditions::State;
+use crate::element::law::Solution;
+use crate::math::Real;
+use crate::reading::SensorUncertainty;
+
+/// Relative standard uncertainty of a flow in three parts.
+#[derive(Debug, Clone, Copy, PartialEq, Default)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
+pub struct Uncertainty {
+    /// From the fit of the calibration (type A).
+    pub fit: f32,
+    /// From what the calibration's points shared, and from fluid data.
+    pub common: f32,
+    /// From the sensors at use.
+    pub sensors: f32,
+}
+
+impl Uncertainty {
+    /// The combined relative standard uncertainty: root of the sum of squares.
+    ///
+    /// ```
+    /// let parts = evenbore::uncertainty::Uncertainty { fit: 0.002, common: 0.003, sensors: 0.006 };
+    /// assert!((parts.combined() - 0.007).abs() < 1e-8);
+    /// ```
+    pub fn combined(&self) -> f32 {
+        (self.fit * self.fit + self.common * self.common + self.sensors * self.sensors).root()
+    }
+}
+
+/// Relative changes of volume flow at line conditions for unit changes of what it depends on.
+#[derive(Debug, Clone, Copy, PartialEq)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
+pub struct Sensitivities {
+    /// Per relative change of pressure drop.
+    pub pressure_drop: f32,
+    /// Per kelvin.
+    pub temperature: f32,
+    /// Per relative change of line pressure.
+    pub line_pressure: f32,
+    /// Per relative change of viscosity; the same for A.
+    pub viscosity: f32,
+    /// Per unit of relative humidity.
+    pub relative_humidity: f32,
+    /// x, m: what multiplies B/A.
+    pub x: f32,
+}
+
+/// Differentiates the law at a solution.
+pub(crate) fn sensitivities(state: &State<f32>, at: &Solution<f32>, drop: f32, humidity: f32) -> Sensitivities {
+    let (law, fluid) = (&state.law, &state.law.fluid);
+    let eps = at.kinetic_share;
+    let d = 1.0 + 2.0 * eps;
+    let gam = (1.0 + eps) / d;
+    let slip = at.slip / (1.0 + at.slip);
+    let t = state.temperature;
+    let n = fluid.exponent;
+    let stretch = law.line_pressure / at.mean_pressure;
+    let expansion = eps * law.expansion_gain * at.log_ratio / (at.q * d);
+    let gas = law.compressible;
+    let moist = &state.moisture;
+    let per_humidity = if humidity > 0.0 { moist.water / humidity } else { 0.0 };
+    Sensitivities {
+        pressure_drop: gam * (1.0 - gas * 0.5 * drop / at.mean_pressure) - expansion,
+        temperature: (gam - 1.0) * fluid.expansion - n / (t * d)
+            + (3.0 + 4.0 * eps) * state.element_expansion / d
+            + slip * (n + 0.5) / (t * d),
+        line_pressure: gas * (gam * stretch - 1.0 - slip * stretch / d + expansion * stretch)
+            - fluid.k[0] * law.line_pressure / d,
+        viscosity: -1.0 / d,
+        relative_humidity: per_humidity * ((gam - 1.0) * moist.density_slope - moist.viscosity_slope / d),
+        x: at.x.magnitude(),
+    }
+}
+
+/// Relative uncertainty of the pressure drop; below a thousandth of its absolute part it stays at 1000, so that it is
+/// finite through zero.
+fn relative_drop(sensors: &SensorUncertainty, drop: f32) -> f32 {
+    let floor = drop.magnitude().at_least(1e-3 * sensors.pressure_drop_pa).at_least(f32::MIN_POSITIVE);
+    let absolute = sensors.pressure_drop_pa / floor;
+    (absolute * absolute + sensors.pressure_drop_rel * sensors.pressure_drop_rel).quick_root()
+}
+
+/// Part of the sensors.
+pub(crate) fn sensor_part(s: &Sensitivities, sensors: &SensorUncertainty, drop: f32, line_pressure: f32) -> f32 {
+    let p = sensors.line_pressure_pa / line_pressure;
+    let parts = [
+        s.pressure_drop * relative_drop(sensors, drop),
+        s.temperature * sensors.temperature_k,
+        s.line_pressure * p,
+        s.line_pressure * sensors.line_pressure_rel,
+        s.relative_humidity * sensors.relative_humidity,
+    ];
+    parts.iter().map(|u| u * u).sum::<f32>().quick_root()
+}
+
+/// Part of the fit.
+pub(crate) fn fit_part(s: &Sensitivities, quality: &Quality) -> f32 {
+    let (u_a, u_b) = (quality.u_a, quality.u_b_m * s.x);
+    let variance = u_a * u_a + u_b * u_b + 2.0 * quality.correlation * u_a * u_b;
+    variance.at_least(0.0).quick_root() * s.viscosity.magnitude()
+}
+
+/// Part of what was common, and of fluid data. `u_viscosity` is that of the fluid at use as far as it does not cancel
+/// against the calibration; `same_fluid` drops the calibration's own viscosity part, which then cancels.
+pub(crate) fn common_part(s: &Sensitivities, quality: &Quality, u_viscosity: f32, same_fluid: bool) -> f32 {
+    let of_part = |a: f32, b: f32| (a + b * s.x) * s.viscosity;
+    let variance: f32 = quality
+        .common
+        .iter()
+        .filter(|part| !(same_fluid && part.cause == Cause::Viscosity))
+        .map(|part| of_part(part.effect_a, part.effect_b_m))
+        .map(|u| u * u)
+        .sum();
+    let fluid = u_viscosity * s.viscosity;
+    (variance + fluid * fluid).quick_root()
+}
