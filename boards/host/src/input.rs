@@ -26,7 +26,8 @@ pub mod readings;
 
 pub mod points;
 
-//pub mod toml_table;
+pub mod toml_table;
 
-//pub mod element_file;
-//pub mod fluids_file;
+pub mod element_file;
+pub mod fluid_table;
+pub mod fluids_file;

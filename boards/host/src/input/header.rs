@@ -193,7 +193,10 @@ mod tests {
 
     #[test]
     fn longest_quantity_wins() {
-        assert!(matches!(recognise("reference_mass_flow_g_min"), Ok(ColumnKind::Measured(Quantity::ReferenceMassFlow, _))));
+        assert!(matches!(
+            recognise("reference_mass_flow_g_min"),
+            Ok(ColumnKind::Measured(Quantity::ReferenceMassFlow, _))
+        ));
         assert_eq!(recognise("timestamp"), Ok(ColumnKind::Unknown));
         assert_eq!(recognise("u_volume_flow_rel"), Ok(ColumnKind::Unknown));
     }

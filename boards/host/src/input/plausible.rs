@@ -45,7 +45,9 @@ fn temperature(value: f64) -> Option<String> {
 /// Looks at an absolute pressure in Pa.
 fn absolute_pressure(value: f64) -> Option<String> {
     if value < NEAR_VACUUM {
-        return Some(format!("{value} Pa is below {NEAR_VACUUM} Pa: is this column in another unit, or gauge pressure?"));
+        return Some(format!(
+            "{value} Pa is below {NEAR_VACUUM} Pa: is this column in another unit, or gauge pressure?"
+        ));
     }
     (value > HIGH_PRESSURE).then(|| format!("{value} Pa is above {HIGH_PRESSURE} Pa: is this column in another unit?"))
 }

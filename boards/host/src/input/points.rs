@@ -157,6 +157,7 @@ impl PointsPlan {
     fn bind(table: &Table) -> Result<Self, Problem> {
         let readings = ReadingsPlan::bind(table)?;
         let (flow, is_mass) = flow_column(table)?;
+        check_orphans(table)?;
         let quantity = if is_mass { Quantity::ReferenceMassFlow } else { Quantity::ReferenceFlow };
         let unknown = table.columns().iter().filter(|column| column.kind == ColumnKind::Unknown);
         Ok(Self {
@@ -217,7 +218,8 @@ impl PointsPlan {
         }
         if flow * reading.pressure_drop.signum() < 0.0 && reading.pressure_drop != 0.0 {
             let drop = row.shown(self.readings.pressure_drop_column());
-            let message = format!("{cell} and the pressure drop {drop} disagree in sign: forward flow is positive in both");
+            let message =
+                format!("{cell} and the pressure drop {drop} disagree in sign: forward flow is positive in both");
             return Err(row.problem(self.flow, message));
         }
         Ok(())
@@ -240,6 +242,19 @@ fn flow_column(table: &Table) -> Result<(usize, bool), Problem> {
             )))
         }
     }
+}
+
+/// Refuses standard uncertainties of values that the table does not have.
+fn check_orphans(table: &Table) -> Result<(), Problem> {
+    for column in table.columns() {
+        if let ColumnKind::Uncertainty { quantity, .. } = column.kind
+            && table.column_of(quantity).is_none()
+        {
+            let message = format!("there is no {} column for it to belong to", quantity.name());
+            return Err(table.column_problem(column.index, message));
+        }
+    }
+    Ok(())
 }
 
 /// Reads a cell that may be empty and refuses one that stands in the wrong unit.

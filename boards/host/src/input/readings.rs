@@ -163,7 +163,8 @@ impl LineColumns {
     /// Finds the barometer beside a gauge.
     fn with_barometer(table: &Table, gauge: usize) -> Result<Self, Problem> {
         if let Some(index) = PartsColumns::bind(table, Quantity::LinePressure).first() {
-            let message = "no line_pressure column belongs to it: state u_line_gauge_pressure and u_barometric_pressure";
+            let message =
+                "no line_pressure column belongs to it: state u_line_gauge_pressure and u_barometric_pressure";
             return Err(table.column_problem(index, message));
         }
         Ok(Self::Gauge {

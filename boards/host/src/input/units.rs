@@ -82,11 +82,8 @@ const PRESSURE: &[Unit] = &[
     // The pound-force in newtons over the square inch in square metres.
     Unit::of("psi", 4.4482216152605, 0.00064516),
 ];
-const TEMPERATURE: &[Unit] = &[
-    Unit::scale("C", 273.15, 1.0, 1.0),
-    Unit::scale("K", 0.0, 1.0, 1.0),
-    Unit::scale("F", 459.67, 5.0, 9.0),
-];
+const TEMPERATURE: &[Unit] =
+    &[Unit::scale("C", 273.15, 1.0, 1.0), Unit::scale("K", 0.0, 1.0, 1.0), Unit::scale("F", 459.67, 5.0, 9.0)];
 const HUMIDITY: &[Unit] = &[Unit::of("pct", 1.0, 100.0), Unit::of("rel", 1.0, 1.0)];
 
 /// A quantity that a column of a bench file may hold.
