@@ -1,3 +1,17 @@
-//! skeleton
-pub mod input;
-pub mod output;
+//! The bench of evenbore: files, calibration, statistics and reports behind the `evenbore` command.
+//!
+//! It holds no law of its own: fluids, elements and flows are those of the `evenbore` library.
+
+// In the order in which a file becomes a certificate; a file imports only from files above it (tests/layers.rs).
+
+pub mod input; // files and command-line values into SI
+
+pub mod output; // whole files or none
+
+pub mod statistics; // fits, distributions, covariances
+
+pub mod resources; // elements and fluids from their files
+
+pub mod calibrate; // points into coefficients, findings and a verdict
+
+pub mod record_file; // the record as text and bytes
