@@ -113,7 +113,8 @@ impl Conditions {
         Ok(drop)
     }
 
-    /// The columns of a fit for a measured mass flow (kg/s) at a measured pressure drop (Pa), both positive.
+    /// The columns of a fit for a measured mass flow (kg/s) at a measured pressure drop (Pa), of one sign; the columns
+    /// of a reverse flow are those of the element turned round.
     ///
     /// # Errors
     /// Refuses what the device refuses.
@@ -122,7 +123,7 @@ impl Conditions {
         let law = &self.state.law;
         let at = law.solve(drop); // for the properties at the mean pressure; its x is not used
         let (mu, rho) = (at.viscosity, law.fluid.density(at.mean_pressure));
-        let x = mass_flow / mu;
+        let x = mass_flow.abs() / mu;
         let stretch = law.stretch;
         Ok(Columns {
             x,
