@@ -26,6 +26,8 @@ pub mod readings;
 
 pub mod points;
 
+pub mod toml_text;
+
 pub mod toml_table;
 
 pub mod element_file;

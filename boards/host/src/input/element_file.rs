@@ -4,7 +4,8 @@ use std::path::Path;
 
 use crate::input::{
     problem::{Problem, shown},
-    toml_table::{Limits, Section, TomlText},
+    toml_table::{Limits, Section},
+    toml_text::TomlText,
 };
 
 /// Longest serial number, in characters.
@@ -82,7 +83,7 @@ impl ElementFile {
     /// As for [`Self::open`].
     ///
     /// ```
-    /// use evenbore_bench::input::{element_file::{ElementFile, Shape}, toml_table::TomlText};
+    /// use evenbore_bench::input::{element_file::{ElementFile, Shape}, toml_text::TomlText};
     /// let text = r#"
     /// serial = "EB-0042"
     /// shape = "round-tubes"
@@ -97,7 +98,7 @@ impl ElementFile {
     /// # Ok::<(), evenbore_bench::input::problem::Problem>(())
     /// ```
     pub fn read(text: &TomlText) -> Result<Self, Problem> {
-        let keys = text.table()?;
+        let keys = Section::top(text)?;
         keys.accept(&[COMMON_KEYS, &OWN_KEYS.concat()].concat())?;
         let shape = keys.choice("shape", SHAPES)?;
         refuse_foreign(&keys, shape)?;

@@ -5,7 +5,8 @@ use std::path::{Path, PathBuf};
 use crate::input::{
     fluid_table::{FluidRow, read_rows},
     problem::{Problem, shown},
-    toml_table::{Limits, Section, TomlText},
+    toml_table::{Limits, Section},
+    toml_text::TomlText,
 };
 
 /// Longest name of a fluid, in characters.
@@ -95,14 +96,14 @@ pub fn open(path: impl AsRef<Path>) -> Result<Vec<NamedFluid>, Problem> {
 ///
 /// ```
 /// use std::path::Path;
-/// use evenbore_bench::input::{fluids_file, toml_table::TomlText};
+/// use evenbore_bench::input::{fluids_file, toml_text::TomlText};
 /// let text = "[coolant]\nkind = \"water-glycol\"\nglycol = \"ethylene\"\nmass_fraction = 0.3\n";
 /// let fluids = fluids_file::read(&TomlText::new("fluids.toml", text), Path::new(""))?;
 /// assert_eq!(fluids[0].name, "coolant");
 /// # Ok::<(), evenbore_bench::input::problem::Problem>(())
 /// ```
 pub fn read(text: &TomlText, folder: &Path) -> Result<Vec<NamedFluid>, Problem> {
-    let top = text.table()?;
+    let top = Section::top(text)?;
     let nothing = top.problem("", "the file declares no fluid: a line [name] with keys below it was expected");
     let fluids: Vec<NamedFluid> =
         top.into_tables()?.iter().map(|keys| named(keys, folder)).collect::<Result<_, _>>()?;

@@ -2,10 +2,13 @@
 
 /// Words longer than this are not compared, in bytes: nobody mistypes that much.
 const LONGEST_WORD: usize = 64;
+/// In words shorter than this a slip makes another word, such as another pressure unit.
+const FEWEST_LETTERS: usize = 4;
 
 /// Finds the accepted word that was probably meant.
 ///
-/// Differences of case and punctuation are looked through first; then one slip in four letters is forgiven.
+/// Differences of case and punctuation are looked through first, then a missing end; then one slip in three letters is
+/// forgiven in words long enough.
 ///
 /// * `wrong`: the word as found
 /// * `accepted`: the words that would have been right
@@ -20,7 +23,7 @@ pub fn nearest<'a>(wrong: &str, accepted: &[&'a str]) -> Option<&'a str> {
     if wrong.len() > LONGEST_WORD {
         return None;
     }
-    same_letters(wrong, accepted).or_else(|| few_slips(wrong, accepted))
+    same_letters(wrong, accepted).or_else(|| cut_short(wrong, accepted)).or_else(|| few_slips(wrong, accepted))
 }
 
 /// Finds the accepted word that differs in case and punctuation only.
@@ -45,12 +48,20 @@ pub fn letters(word: &str) -> String {
     word.chars().filter(|c| c.is_alphanumeric()).flat_map(char::to_lowercase).collect()
 }
 
-/// Finds the accepted word within one slip for every four letters.
+/// Finds the only accepted word that goes on where a wrong one ends.
+fn cut_short<'a>(wrong: &str, accepted: &[&'a str]) -> Option<&'a str> {
+    let start = letters(wrong);
+    let mut longer = accepted.iter().copied().filter(|word| letters(word).starts_with(&start));
+    let only = longer.next().filter(|_| longer.next().is_none());
+    only.filter(|_| start.len() >= FEWEST_LETTERS)
+}
+
+/// Finds the accepted word within one slip for every three letters.
 fn few_slips<'a>(wrong: &str, accepted: &[&'a str]) -> Option<&'a str> {
     let wanted: Vec<char> = letters(wrong).chars().collect();
     let slips = |word: &&str| distance(&wanted, &letters(word).chars().collect::<Vec<_>>());
     let best = accepted.iter().copied().min_by_key(slips)?;
-    (slips(&best) <= wanted.len() / 4).then_some(best)
+    (wanted.len() >= FEWEST_LETTERS && slips(&best) <= wanted.len() / 3).then_some(best)
 }
 
 /// Counts the letters to insert, remove or replace to turn one word into the other.

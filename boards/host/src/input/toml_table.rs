@@ -1,28 +1,14 @@
 //! TOML read key by key, each value with its place in the file, its range, and the keys that would have been accepted.
 
-use std::{ops::Range, path::Path};
+use std::ops::Range;
 
 use toml::de::{DeTable, DeValue};
 
 use crate::input::{
     nearest::did_you_mean,
     problem::{Problem, shown},
-    source,
+    toml_text::TomlText,
 };
-
-/// A TOML file's text.
-///
-/// ```
-/// use evenbore_bench::input::toml_table::{Limits, TomlText};
-/// let text = TomlText::new("element.toml", "bore_mm = 99.0");
-/// let message = text.table()?.number("bore_mm", Limits::new(0.001, 50.0, "mm")).unwrap_err().to_string();
-/// assert_eq!(message, "element.toml:1, column 11 (bore_mm): 99 mm is outside 0.001 mm to 50 mm");
-/// # Ok::<(), evenbore_bench::input::problem::Problem>(())
-/// ```
-pub struct TomlText {
-    file: String,
-    text: String,
-}
 
 /// The values a number may have, both ends included.
 #[derive(Clone, Copy, Debug)]
@@ -49,57 +35,15 @@ impl Limits {
     }
 }
 
-impl TomlText {
-    /// Reads a file.
-    ///
-    /// * `path`: as the user gave it, `-` for standard input
-    ///
-    /// # Errors
-    /// Where the system refuses, the file is larger than 1 MiB or is not UTF-8.
-    pub fn open(path: &Path) -> Result<Self, Problem> {
-        Ok(Self::new(&source::display_name(path), &source::read_text(path)?))
-    }
-
-    /// Takes a text.
-    ///
-    /// * `file`: name in messages
-    /// * `text`: the TOML
-    pub fn new(file: &str, text: &str) -> Self {
-        Self { file: file.to_owned(), text: text.to_owned() }
-    }
-
-    /// The table of the file's top level.
-    ///
-    /// # Errors
-    /// Where the text is not TOML.
-    pub fn table(&self) -> Result<Section<'_>, Problem> {
-        match DeTable::parse(&self.text) {
-            Ok(table) => Ok(Section { source: self, name: String::new(), at: 0, table: table.into_inner() }),
-            Err(error) => Err(self.syntax(&error)),
-        }
-    }
-
-    /// States a problem at a byte of the text.
-    fn problem(&self, at: usize, key: &str, message: impl Into<String>) -> Problem {
-        let before = self.text.get(..at).unwrap_or(&self.text);
-        let line = before.matches('\n').count() as u64 + 1;
-        let column = before.rsplit('\n').next().unwrap_or_default().chars().count() + 1;
-        Problem::new(&self.file, message).at_line(line).at_column(column, key)
-    }
-
-    /// States that the text is not TOML.
-    fn syntax(&self, error: &toml::de::Error) -> Problem {
-        let at = error.span().map_or(0, |span| span.start);
-        let key = self.text.get(..at).and_then(|before| before.rsplit('\n').next()).unwrap_or_default();
-        let key = key.split('=').next().unwrap_or_default().trim();
-        let line = self.text.get(at..).unwrap_or_default().lines().next().unwrap_or_default();
-        let hint = if line.starts_with(',') { "; a decimal comma? Write a point" } else { "" };
-        let message = error.message().trim().replace('\n', ", ");
-        self.problem(at, key, format!("{} is not TOML here: {message}{hint}", shown(line.as_bytes())))
-    }
-}
-
 /// One table of a TOML file.
+///
+/// ```
+/// use evenbore_bench::input::{toml_table::{Limits, Section}, toml_text::TomlText};
+/// let text = TomlText::new("element.toml", "bore_mm = 99.0");
+/// let message = Section::top(&text)?.number("bore_mm", Limits::new(0.001, 50.0, "mm")).unwrap_err().to_string();
+/// assert_eq!(message, "element.toml:1, column 11 (bore_mm): 99 mm is outside 0.001 mm to 50 mm");
+/// # Ok::<(), evenbore_bench::input::problem::Problem>(())
+/// ```
 pub struct Section<'t> {
     source: &'t TomlText,
     name: String,
@@ -114,6 +58,19 @@ struct Found<'s, 't> {
 }
 
 impl<'t> Section<'t> {
+    /// The table of a file's top level.
+    ///
+    /// * `source`: the file's text
+    ///
+    /// # Errors
+    /// Where the text is not TOML.
+    pub fn top(source: &'t TomlText) -> Result<Self, Problem> {
+        match DeTable::parse(source.as_str()) {
+            Ok(table) => Ok(Self { source, name: String::new(), at: 0, table: table.into_inner() }),
+            Err(error) => Err(source.syntax(&error)),
+        }
+    }
+
     /// Name of the table; empty for the top level.
     pub fn name(&self) -> &str {
         &self.name
@@ -326,7 +283,7 @@ impl<'t> Section<'t> {
 
     /// The text of a value.
     fn quote(&self, found: &Found<'_, 't>) -> String {
-        shown(self.source.text.get(found.span.clone()).unwrap_or_default().as_bytes())
+        shown(self.source.as_str().get(found.span.clone()).unwrap_or_default().as_bytes())
     }
 }
 
