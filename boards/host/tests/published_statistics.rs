@@ -4,7 +4,7 @@
 
 use std::path::Path;
 
-use evenbore_bench::statistics::both_axes::{Line, Points};
+use evenbore_bench::statistics::both_axes::Points;
 use evenbore_bench::statistics::distributions::student_t_quantile;
 use evenbore_bench::statistics::least_squares::{Fit, LeastSquares};
 use evenbore_bench::statistics::rank_one::PairCovariance;
@@ -189,7 +189,7 @@ const H3_PUBLISHED: [Printed; 11] = [
 ];
 
 fn h3_rows(nudge: f64) -> Vec<Row> {
-    let from_20: Vec<f64> = nudged(&H3[0], 2, nudge).iter().map(|t| t - 20.0).collect();
+    let from_20: Vec<f64> = nudged(&H3[0], 0, nudge).iter().map(|t| t - 20.0).collect();
     let fit = straight(&from_20, &nudged(&H3[1], 9, nudge)).solve().expect("H.3");
     let variance = fit.residual_variance().expect("degrees of freedom");
     let covariance = PairCovariance::from_fit(&fit).expect("two parameters").scaled(variance);
@@ -326,34 +326,48 @@ const PEARSON_YORK: [[f64; 10]; 4] = [
 ];
 
 #[rustfmt::skip]
-const PEARSON_YORK_PUBLISHED: [Printed; 7] = [
-    ("York intercept",              5.47991022,  1e-8, "Neri et al., J. Phys. E 22 (1989) 215"),
-    ("York slope",                 -0.480533407, 1e-9, "Neri et al., J. Phys. E 22 (1989) 215"),
-    ("York chi2/dof",               1.4833,      1e-4, "Neri et al., J. Phys. E 22 (1989) 215"),
-    ("York u(intercept), adjusted", 0.295,       1e-3, "York et al., Am. J. Phys. 72 (2004) 367"),
-    ("York u(slope), adjusted",     0.058,       1e-3, "York et al., Am. J. Phys. 72 (2004) 367"),
-    ("York u(intercept), observed", 0.29193,     1e-5, "Kalantar, Meas. Sci. Technol. 3 (1992) 1113"),
-    ("York u(slope), observed",     0.057617,    1e-6, "Kalantar, Meas. Sci. Technol. 3 (1992) 1113"),
+const PEARSON_YORK_PUBLISHED: [Printed; 8] = [
+    ("York intercept",                5.47991022,  1e-8, "Neri et al., J. Phys. E 22 (1989) 215"),
+    ("York slope",                   -0.480533407, 1e-9, "Neri et al., J. Phys. E 22 (1989) 215"),
+    ("York chi2/dof",                 1.4833,      1e-4, "Neri et al., J. Phys. E 22 (1989) 215"),
+    ("York u(intercept), adjusted",   0.295,       1e-3, "York et al., Am. J. Phys. 72 (2004) 367"),
+    ("York u(slope), adjusted",       0.058,       1e-3, "York et al., Am. J. Phys. 72 (2004) 367"),
+    ("York u(intercept), propagated", 0.29193,     1e-5, "Kalantar, Meas. Sci. Technol. 3 (1992) 1113"),
+    ("York u(slope), propagated",     0.057617,    1e-6, "Kalantar, Meas. Sci. Technol. 3 (1992) 1113"),
+    ("York cov, propagated",         -0.0162,      1e-4, "Kalantar, Meas. Sci. Technol. 3 (1992) 1113"),
 ];
 
-/// Standard uncertainties taken at the observed abscissae, the convention before 2004.
-fn observed_convention(points: &Points, line: &Line) -> [f64; 2] {
-    let across = |(ux, uy): (&f64, &f64)| (line.slope * ux).hypot(*uy);
-    let u: Vec<f64> = points.x_uncertainty.iter().zip(points.y_uncertainty).map(across).collect();
-    let fit = straight(points.x, points.y).uncertainties(&u).solve().expect("line");
-    PairCovariance::from_fit(&fit).expect("two parameters").standard_uncertainties()
+/// What one standard uncertainty of a coordinate does to intercept and slope, by central differences.
+fn effect(points: &Points, i: usize, shift: [f64; 2]) -> [f64; 2] {
+    let moved = |sign: f64| {
+        let (mut x, mut y) = (points.x.to_vec(), points.y.to_vec());
+        x[i] += sign * 1e-4 * shift[0];
+        y[i] += sign * 1e-4 * shift[1];
+        let line = Points { x: &x, y: &y, ..*points }.line().expect("moved line");
+        [line.intercept, line.slope]
+    };
+    let (up, down) = (moved(1.0), moved(-1.0));
+    [(up[0] - down[0]) / 2e-4, (up[1] - down[1]) / 2e-4]
+}
+
+/// Covariance by propagating the uncertainty of every coordinate; it differs from York's in second order.
+fn propagated(points: &Points) -> PairCovariance {
+    let shifts = |i: usize| [[points.x_uncertainty[i], 0.0], [0.0, points.y_uncertainty[i]]];
+    let effects = (0..points.x.len()).flat_map(|i| shifts(i).map(|shift| effect(points, i, shift)));
+    effects.fold(PairCovariance([[0.0; 2]; 2]), PairCovariance::with_common)
 }
 
 fn pearson_york_rows(nudge: f64) -> Vec<Row> {
     let [x, wx, y, wy] = PEARSON_YORK;
+    let deviations = |weights: &[f64]| weights.iter().map(|w| w.sqrt().recip()).collect::<Vec<_>>();
     let (x, y) = (nudged(&x, 3, nudge), nudged(&y, 8, nudge));
-    let (ux, uy) =
-        (wx.map(|w| w.sqrt().recip()), nudged(&wy, 9, -nudge).iter().map(|w| w.sqrt().recip()).collect::<Vec<_>>());
+    let (ux, uy) = (deviations(&wx), deviations(&nudged(&wy, 9, -nudge)));
     let points = Points { x: &x, y: &y, x_uncertainty: &ux, y_uncertainty: &uy, correlation: &[0.0; 10] };
     let line = points.line().expect("line");
-    let ([ua, ub], [oa, ob]) = (line.covariance.standard_uncertainties(), observed_convention(&points, &line));
+    let (adjusted, moved) = (line.covariance.standard_uncertainties(), propagated(&points));
     let reduced = line.chi_squared / line.degrees_of_freedom as f64;
-    printed(PEARSON_YORK_PUBLISHED, [line.intercept, line.slope, reduced, ua, ub, oa, ob])
+    let ([ua, ub], [pa, pb]) = (adjusted, moved.standard_uncertainties());
+    printed(PEARSON_YORK_PUBLISHED, [line.intercept, line.slope, reduced, ua, ub, pa, pb, moved.0[0][1]])
 }
 
 #[test]

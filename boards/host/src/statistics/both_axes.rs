@@ -3,7 +3,7 @@
 use super::rank_one::PairCovariance;
 use super::{Result, StatisticsError, require, require_at_least, require_each, require_finite, require_length};
 
-/// Largest step of the slope, relative to the slope or to its uncertainty if that is larger, that counts as settled.
+/// Largest step of the slope that counts as settled, relative to the slope its sum would give if no terms cancelled.
 const STEP_LIMIT: f64 = 1e-15;
 
 /// Iterations before giving up.
@@ -79,16 +79,16 @@ impl Points<'_> {
     pub fn line(&self) -> Result<Line> {
         self.check()?;
         let mut state = self.weigh(self.unweighted_slope()?)?;
+        let mut step = f64::NAN;
         for iterations in 1..=ITERATION_LIMIT {
-            let next = self.weigh(state.next_slope()?)?;
-            let step = (next.slope - state.slope).abs() / next.slope.abs().max(next.slope_uncertainty());
-            state = next;
+            let (slope, gross) = state.next_slope()?;
+            step = (slope - state.slope).abs() / gross;
+            state = self.weigh(slope)?;
             if step <= STEP_LIMIT {
                 return Ok(state.line(iterations));
             }
-            state.step = step;
         }
-        Err(StatisticsError::NoConvergence { iterations: ITERATION_LIMIT, step: state.step, limit: STEP_LIMIT })
+        Err(StatisticsError::NoConvergence { iterations: ITERATION_LIMIT, step, limit: STEP_LIMIT })
     }
 
     fn check(&self) -> Result<()> {
@@ -132,11 +132,8 @@ impl Points<'_> {
         require_each("variance across the line", &variances, "positive", |v| v > 0.0 && v.is_finite())?;
         let weights: Vec<f64> = variances.iter().map(|v| 1.0 / v).collect();
         let total: f64 = weights.iter().sum();
-        let mean = |list: &[f64]| {
-            let origin = list[0];
-            origin + weights.iter().zip(list).map(|(w, value)| w * (value - origin)).sum::<f64>() / total
-        };
-        Ok(State { x_mean: mean(self.x), y_mean: mean(self.y), points: self, slope, weights, total, step: f64::NAN })
+        let mean = |list: &[f64]| weights.iter().zip(list).map(|(w, z)| w * (z - list[0])).sum::<f64>() / total;
+        Ok(State { x_mean: mean(self.x), y_mean: mean(self.y), points: self, slope, weights, total })
     }
 }
 
@@ -146,15 +143,16 @@ struct State<'a> {
     slope: f64,
     weights: Vec<f64>,
     total: f64,
+    /// Weighted means, counted from the first point so that a distant origin costs no digits.
     x_mean: f64,
     y_mean: f64,
-    step: f64,
 }
 
 impl State<'_> {
     /// U and V of point `i`.
     fn distances(&self, i: usize) -> (f64, f64) {
-        (self.points.x[i] - self.x_mean, self.points.y[i] - self.y_mean)
+        let (x, y) = (self.points.x, self.points.y);
+        (x[i] - x[0] - self.x_mean, y[i] - y[0] - self.y_mean)
     }
 
     /// β of point `i`, the adjusted distance of its abscissa from the mean.
@@ -163,16 +161,18 @@ impl State<'_> {
         self.weights[i] * (u * yy + self.slope * v * xx - (self.slope * u + v) * xy)
     }
 
-    fn next_slope(&self) -> Result<f64> {
-        let (mut above, mut below) = (0.0, 0.0);
+    /// The next slope, and the size it would have if every term of its numerator had the same sign.
+    fn next_slope(&self) -> Result<(f64, f64)> {
+        let (mut above, mut gross, mut below) = (0.0, 0.0, 0.0);
         for (i, weight) in self.weights.iter().enumerate() {
             let (u, v) = self.distances(i);
             let beta = weight * self.adjusted(i);
             above += beta * v;
+            gross += (beta * v).abs();
             below += beta * u;
         }
-        let slope = above / below;
-        require(slope.is_finite(), "slope", slope, "finite")
+        require((above / below).is_finite(), "slope", above / below, "finite")?;
+        Ok((above / below, (gross / below).abs().max(f64::MIN_POSITIVE)))
     }
 
     /// Weighted mean of the adjusted distances and the weighted sum of squares about it.
@@ -180,10 +180,6 @@ impl State<'_> {
         let each = || self.weights.iter().enumerate().map(|(i, weight)| (weight, self.adjusted(i)));
         let mean = each().map(|(weight, beta)| weight * beta).sum::<f64>() / self.total;
         (mean, each().map(|(weight, beta)| weight * (beta - mean).powi(2)).sum())
-    }
-
-    fn slope_uncertainty(&self) -> f64 {
-        self.adjusted_moments().1.recip().sqrt()
     }
 
     fn chi_squared(&self) -> f64 {
@@ -194,9 +190,9 @@ impl State<'_> {
 
     fn line(&self, iterations: usize) -> Line {
         let (mean, moment) = self.adjusted_moments();
-        let (x, variance) = (self.x_mean + mean, 1.0 / moment);
+        let (x, variance) = (self.points.x[0] + self.x_mean + mean, 1.0 / moment);
         Line {
-            intercept: self.y_mean - self.slope * self.x_mean,
+            intercept: self.points.y[0] + self.y_mean - self.slope * (self.points.x[0] + self.x_mean),
             slope: self.slope,
             covariance: PairCovariance([
                 [1.0 / self.total + x * x * variance, -x * variance],
@@ -206,5 +202,35 @@ impl State<'_> {
             degrees_of_freedom: self.weights.len() - 2,
             iterations,
         }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn fit(x: &[f64], y: &[f64], ux: &[f64], uy: &[f64], r: &[f64]) -> Result<Line> {
+        Points { x, y, x_uncertainty: ux, y_uncertainty: uy, correlation: r }.line()
+    }
+
+    /// What cannot carry a line is refused by name.
+    #[test]
+    fn refusals() {
+        let (x, y, u, r) = ([0.0, 1.0, 2.0], [0.0, 1.0, 3.0], [0.1; 3], [0.0; 3]);
+        let refused = |result: Result<Line>, word: &str| assert!(result.unwrap_err().to_string().contains(word));
+        refused(fit(&[1.0; 3], &y, &u, &u, &r), "spread of x");
+        refused(fit(&x, &y, &[0.0; 3], &[0.1, 0.0, 0.1], &r), "variance across the line");
+        refused(fit(&x, &y, &u, &u, &[0.0, 0.0, 1.5]), "entry 2 of correlation is 1.5");
+        refused(fit(&x, &y[..2], &u, &u, &r), "y has 2 entries, 3");
+        refused(fit(&x[..1], &y, &u, &u, &r), "points has 1 entries, 2");
+        refused(fit(&x, &y, &[-0.1; 3], &u, &r), "entry 0 of x_uncertainty");
+    }
+
+    /// A level line and a distant origin settle as well as any other.
+    #[test]
+    fn level_and_distant_points_settle() {
+        let (x, u) = ([1e6, 1e6 + 1.0, 1e6 + 2.0, 1e6 + 3.0], [0.1, 0.2, 0.1, 0.3]);
+        assert!(fit(&x, &[5.0, 6.0, 6.0, 5.0], &u, &u, &[0.3; 4]).unwrap().iterations < 50);
+        assert_eq!(fit(&x, &[7.0; 4], &u, &u, &[0.0; 4]).unwrap().slope, 0.0);
     }
 }
