@@ -3,13 +3,10 @@
 use crate::element::Element;
 use crate::element::law::Prepared;
 use crate::fluid::StoredFluid;
-use crate::fluid::moist_air::{self, Moisture};
+use crate::fluid::moist_air::{Moisture, moisture};
 use crate::fluid::properties::{PropertiesAt, outside};
 use crate::math::Real;
 use crate::status::Refusal;
-
-/// The fluid that carries humidity.
-const MOIST_FLUID: &str = "air";
 
 /// What flows, and the law for it, at one temperature and line pressure.
 #[derive(Debug, Clone, Copy)]
@@ -48,8 +45,7 @@ impl<F: Real> State<F> {
         };
         let mut properties = PropertiesAt::new(fluid, temperature);
         if humidity.is_some() {
-            properties.mu0 = properties.mu0 * moisture.viscosity_factor;
-            properties.base = properties.base * moisture.mass_factor;
+            properties = moisture.moisten(properties);
         }
         let flowing_mass = molar_mass * moisture.mass_factor;
         Ok(Self {
@@ -80,15 +76,4 @@ impl<F: Real> State<F> {
             Ok(())
         }
     }
-}
-
-/// Moisture of air, or the reason why it cannot be.
-fn moisture<F: Real>(fluid: &StoredFluid, fraction: F, temperature: F, pressure: F) -> Result<Moisture<F>, Refusal> {
-    let [low, high] = moist_air::TEMPERATURE_RANGE.map(F::stored);
-    let possible = fraction >= F::of(0.0) && fraction <= F::of(1.0) && temperature >= low && temperature <= high;
-    if !possible || fluid.name() != MOIST_FLUID {
-        return Err(Refusal::HUMIDITY_INVALID);
-    }
-    let moisture = Moisture::new(fraction, temperature, pressure, F::stored(fluid.molar_mass));
-    if moisture.water <= F::of(moist_air::MOST_WATER) { Ok(moisture) } else { Err(Refusal::HUMIDITY_INVALID) }
 }

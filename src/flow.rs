@@ -118,6 +118,15 @@ impl<'a> Meter<'a> {
         Ok(Self { trims, sensors, ..self })
     }
 
+    /// The same meter with uncertainties of its sensors.
+    ///
+    /// # Errors
+    /// Names the uncertainty outside its limits.
+    pub fn with_sensor_uncertainty(self, sensors: SensorUncertainty) -> Result<Self, Error> {
+        let trims = self.trims;
+        self.with_sensors(trims, sensors)
+    }
+
     /// The same meter with a status that stands beside every flow.
     pub fn with_standing(self, standing: Status) -> Self {
         Self { standing, ..self }

@@ -11,4 +11,6 @@ pub mod fit; // A and B with their covariance
 
 pub mod findings; // lack of fit and its cause
 
+pub mod certainty; // uncertainty over the range, and its budget
+
 pub mod verdict; // the whole run judged, the record written

@@ -15,3 +15,5 @@ pub mod resources; // elements and fluids from their files
 pub mod calibrate; // points into coefficients, findings and a verdict
 
 pub mod record_file; // the record as text and bytes
+
+pub mod report; // the outcome as one page

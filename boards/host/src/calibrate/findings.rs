@@ -4,7 +4,7 @@
 //! a zero offset of the pressure drop, else missing physics. Geometry is asked in any case: it alone sees a wrong gas,
 //! whose fit looks perfect.
 
-use crate::calibrate::fit::{Basis, Prior, Solution, fit};
+use crate::calibrate::fit::{Basis, Prior, Solution, fit, sigma_of};
 use crate::calibrate::outcome::Finding;
 use crate::calibrate::samples::Sample;
 use crate::statistics::Result;
@@ -117,9 +117,9 @@ fn transition(run: &Run<'_>) -> Result<Option<Vec<u64>>> {
     while below < sorted.len() {
         let lower: Vec<Sample> = sorted.iter().take(below).map(|&s| s.clone()).collect();
         let line = fit(&lower, run.u_viscosity, run.solution.prior)?;
-        let z = prediction_error(run, &line, sorted[below]);
+        let z = prediction_error(&line, sorted[below]);
         if z > OUTLYING {
-            let all_above = sorted[below..].iter().all(|s| prediction_error(run, &line, s) > OUTLYING / 2.0);
+            let all_above = sorted[below..].iter().all(|s| prediction_error(&line, s) > OUTLYING / 2.0);
             let agrees = line.p_value() >= REFUSING_PROBABILITY;
             let lines = sorted[below..].iter().map(|s| s.line).collect();
             return Ok((agrees && all_above && sorted.len() - below > 1).then_some(lines));
@@ -133,14 +133,9 @@ fn transition(run: &Run<'_>) -> Result<Option<Vec<u64>>> {
 }
 
 /// Y of a sample against what a fit to others predicts, in standard uncertainties of the difference.
-fn prediction_error(run: &Run<'_>, line: &Solution, sample: &Sample) -> f64 {
+fn prediction_error(line: &Solution, sample: &Sample) -> f64 {
     let (u, v) = (sample.columns.u, sample.columns.v);
-    let index = run.samples.iter().position(|s| s.line == sample.line);
-    let sigma = index.and_then(|i| run.solution.sigmas.get(i)).copied().unwrap_or(f64::INFINITY);
-    let own = match line.basis {
-        Basis::Stated => sigma,
-        Basis::Residuals => line.sigmas.first().map_or(f64::INFINITY, |s| s * sample.columns.y / line.a),
-    };
+    let own = sigma_of(sample, line);
     let variance = line.covariance.variance_along([u, v]) + own * own;
     (sample.columns.y - line.a * u - line.b * v) / variance.sqrt()
 }
@@ -273,7 +268,13 @@ fn geometry(run: &Run<'_>) -> Option<Finding> {
 }
 
 fn prior_used(run: &Run<'_>) -> Option<Finding> {
-    run.solution.prior.map(|prior| {
+    let prior = run.solution.prior?;
+    if prior.value == 0.0 {
+        let message = "the run does not show a kinetic term and the drawing gives none; B is held at zero, and the \
+                       range of validity ends with the run";
+        return Some(finding("b-from-prior", Vec::new(), false, message.into()));
+    }
+    Some({
         let percent = 100.0 * prior.u / prior.value;
         let message = format!(
             "the run does not reach flows large enough to fix B; it is held at its geometric value within {percent:.0} %, \

@@ -117,6 +117,14 @@ fn effective(sample: &Sample, a: f64, b: f64) -> f64 {
     sample.sources.iter().map(|(_, parts, slope)| part(parts.independent, slope.of_residual(a, b))).sum::<f64>().sqrt()
 }
 
+/// Standard uncertainty of Y at a sample that the fit did not use.
+pub fn sigma_of(sample: &Sample, solution: &Solution) -> f64 {
+    match solution.basis {
+        Basis::Stated => effective(sample, solution.a, solution.b),
+        Basis::Residuals => solution.sigmas.first().map_or(f64::NAN, |s| s * sample.columns.y / solution.a),
+    }
+}
+
 /// A sample that states no independent uncertainty although others do: its line in the points file.
 pub fn unstated_line(samples: &[Sample]) -> Option<u64> {
     let silent = |s: &&Sample| s.sources.iter().all(|(_, parts, _)| parts.independent.is_none_or(|u| u == 0.0));

@@ -41,6 +41,22 @@ pub fn parse_quantity(text: &str, quantity: Quantity) -> Result<f64, String> {
     }
 }
 
+/// Reads a difference, such as an uncertainty: a number followed by its unit, without the unit's zero point.
+///
+/// * `text`: such as `0.1K`
+/// * `quantity`: what it is a difference of
+///
+/// # Errors
+/// A message that repeats the text and lists the accepted units.
+///
+/// ```
+/// use evenbore_bench::input::{units::Quantity, written::parse_interval};
+/// assert_eq!(parse_interval("0.9F", Quantity::Temperature), Ok(0.5));
+/// ```
+pub fn parse_interval(text: &str, quantity: Quantity) -> Result<f64, String> {
+    converted(text.trim(), quantity.units(), Unit::interval_to_si)
+}
+
 /// Reads reference conditions: a temperature and an absolute pressure with a comma between, in either order.
 ///
 /// * `text`: such as `0C,101.325kPa`
@@ -99,10 +115,15 @@ fn floor(quantity: Quantity) -> Option<f64> {
 
 /// Splits a text into number and unit and converts to SI.
 fn with_unit(text: &str, units: &[Unit]) -> Result<f64, String> {
+    converted(text, units, Unit::to_si)
+}
+
+/// Splits a text into number and unit and converts it by `to_si`.
+fn converted(text: &str, units: &[Unit], to_si: fn(&Unit, f64) -> f64) -> Result<f64, String> {
     let plain = text.replace('/', "_");
     let fits = |unit: &Unit| {
         let digits = plain.strip_suffix(unit.name())?;
-        number(digits.as_bytes()).ok().map(|value| unit.to_si(value))
+        number(digits.as_bytes()).ok().map(|value| to_si(unit, value))
     };
     units.iter().find_map(fits).filter(|value| value.is_finite()).ok_or_else(|| refusal(&plain, units))
 }

@@ -38,3 +38,21 @@ pub fn nominal(file: &ElementFile) -> Result<Element, Error> {
 pub fn has_nominal_coefficients(file: &ElementFile) -> bool {
     !matches!(file.shape, Shape::Other { .. })
 }
+
+/// The file's content in words, for a report.
+pub fn describe(file: &ElementFile) -> Vec<(String, String)> {
+    let mm = |value: f64| format!("{value} mm");
+    let (shape, mut sizes) = match file.shape {
+        Shape::RoundTubes { bore_mm } => ("round tubes", vec![("bore", mm(bore_mm))]),
+        Shape::ParallelPlates { gap_mm, width_mm } => {
+            ("parallel plates", vec![("gap", mm(gap_mm)), ("width", mm(width_mm))])
+        }
+        Shape::Other { .. } => ("other", vec![]),
+    };
+    sizes.insert(0, ("shape", shape.into()));
+    sizes.push(("channels", file.count.to_string()));
+    sizes.push(("length", mm(file.length_mm)));
+    sizes.push(("thermal expansion", format!("{:e} 1/K", file.expansion_per_k)));
+    sizes.push(("reference temperature", format!("{} C", file.reference_temperature_c)));
+    sizes.into_iter().map(|(name, value)| (name.into(), value)).collect()
+}

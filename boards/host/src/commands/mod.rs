@@ -1,0 +1,108 @@
+//! The commands, and what they share.
+
+pub mod calibrate;
+pub mod flow;
+pub mod fluid;
+
+use clap::Args;
+use evenbore::quantity::{AbsolutePressure, Temperature};
+use evenbore::reading::SensorUncertainty;
+use evenbore::reference::ReferenceConditions;
+use evenbore_bench::input::problem::Problem;
+use evenbore_bench::input::units::Quantity;
+use evenbore_bench::input::written::{parse_interval, parse_quantity, parse_reference_conditions};
+use std::io::Write;
+
+/// How a command ended.
+pub enum Ended {
+    /// All done.
+    Done,
+    /// The calibration run was refused.
+    Refused,
+}
+
+/// Reads `--reference-conditions`.
+pub fn reference_conditions(text: &str) -> Result<ReferenceConditions, String> {
+    let given = parse_reference_conditions(text)?;
+    let (t, p) = (given.temperature as f32, given.pressure as f32);
+    ReferenceConditions::new(Temperature::from_kelvin(t), AbsolutePressure::from_pascals(p)).map_err(|e| e.to_string())
+}
+
+/// Standard uncertainties of the instrument's sensors.
+#[derive(Debug, Args)]
+#[command(next_help_heading = "Standard uncertainties of the instrument's sensors")]
+pub struct SensorOptions {
+    /// Pressure drop: an absolute part, a relative part, or both, as 0.2Pa,0.1pct
+    #[arg(long, value_name = "U", value_parser = pressure_drop_parts)]
+    u_pressure_drop: Option<UncertainParts>,
+    /// Element temperature, as 0.1K
+    #[arg(long, value_name = "U", value_parser = temperature_part)]
+    u_temperature: Option<f64>,
+    /// Line pressure: an absolute part, a relative part, or both, as 100Pa,0.1pct
+    #[arg(long, value_name = "U", value_parser = line_pressure_parts)]
+    u_line_pressure: Option<UncertainParts>,
+}
+
+/// An absolute part in SI and a relative part.
+#[derive(Debug, Clone, Copy, Default)]
+pub struct UncertainParts {
+    absolute: f64,
+    relative: f64,
+}
+
+impl SensorOptions {
+    /// The sensors: what the options say over what `otherwise` says.
+    pub fn over(&self, otherwise: SensorUncertainty) -> SensorUncertainty {
+        let mut sensors = otherwise;
+        if let Some(parts) = self.u_pressure_drop {
+            (sensors.pressure_drop_pa, sensors.pressure_drop_rel) = (parts.absolute as f32, parts.relative as f32);
+        }
+        if let Some(kelvin) = self.u_temperature {
+            sensors.temperature_k = kelvin as f32;
+        }
+        if let Some(parts) = self.u_line_pressure {
+            (sensors.line_pressure_pa, sensors.line_pressure_rel) = (parts.absolute as f32, parts.relative as f32);
+        }
+        sensors
+    }
+}
+
+fn pressure_drop_parts(text: &str) -> Result<UncertainParts, String> {
+    parts(text, Quantity::PressureDrop)
+}
+
+fn line_pressure_parts(text: &str) -> Result<UncertainParts, String> {
+    parts(text, Quantity::LinePressure)
+}
+
+fn temperature_part(text: &str) -> Result<f64, String> {
+    parse_interval(text, Quantity::Temperature)
+}
+
+fn parts(text: &str, quantity: Quantity) -> Result<UncertainParts, String> {
+    let mut parts = UncertainParts::default();
+    for part in text.split(',') {
+        match parse_quantity(part, Quantity::RelativeHumidity) {
+            Ok(relative) => parts.relative = relative,
+            Err(_) => parts.absolute = parse_interval(part, quantity)?,
+        }
+    }
+    if parts.absolute < 0.0 || parts.relative < 0.0 {
+        return Err("an uncertainty cannot be negative".into());
+    }
+    Ok(parts)
+}
+
+/// Prints to standard output; a reader that went away ends the command in silence.
+pub fn print(text: &str) -> Result<(), Problem> {
+    let mut out = std::io::stdout().lock();
+    let done = out.write_all(text.as_bytes()).and_then(|()| out.flush());
+    done.map_err(|error| Problem::io("standard output", "cannot write", &error))
+}
+
+/// A value as JSON text with a line end.
+pub fn json(value: &impl serde::Serialize) -> Result<String, Problem> {
+    serde_json::to_string_pretty(value)
+        .map(|text| text + "\n")
+        .map_err(|error| Problem::new("summary", error.to_string()))
+}
