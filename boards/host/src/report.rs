@@ -8,6 +8,7 @@ mod axis;
 mod characteristic;
 mod figure;
 mod key;
+mod label;
 mod numbers;
 mod range;
 mod residuals;
@@ -55,7 +56,7 @@ pub fn render(calibration: &Calibration, provenance: &Provenance) -> Result<Stri
         points => tables::points(calibration),
         budget => tables::budget(calibration),
         common => tables::common(calibration),
-        statement => words::uncertainty_statement(calibration),
+        coverage => words::coverage(calibration),
         basis => words::basis(calibration),
         cautions => words::cautions(calibration),
         provenance => provenance_values(provenance),
@@ -108,12 +109,12 @@ fn key_numbers(calibration: &Calibration) -> Value {
         b_from_prior => c.b_from_prior,
         correlation => numbers::fixed(c.correlation_ab, 3),
         chi_squared => numbers::fixed(c.chi_squared, 1),
-        freedom => numbers::significant(c.degrees_of_freedom, 3),
+        freedom => numbers::freedom(c.degrees_of_freedom),
         p_value => numbers::probability(c.p_value),
         flow_low => litres(&low),
         flow_high => litres(&high),
         x_low => numbers::significant(c.range.x_min, 3),
-        x_high => numbers::significant(c.range.x_max, 4),
+        x_high => numbers::significant(c.range.x_max, 3),
         drop_high => numbers::significant(c.range.pressure_drop_max, 4),
         reynolds => c.range.reynolds_max.map_or_else(|| MISSING.to_string(), |re| numbers::fixed(re, 0)),
         a_ratio => ratio(c.geometry.a_ratio),

@@ -6,7 +6,7 @@ use evenbore_bench::calibrate::outcome::{
 use evenbore_bench::report::{Provenance, render};
 
 const A: f64 = 3.412e11;
-const B: f64 = 2.31e7;
+const B: f64 = 1.63e9;
 /// Viscosity of the simulated gas, Pa s.
 const VISCOSITY: f64 = 17.6e-6;
 /// Mass flow over viscosity, m, for one cubic metre a second.
@@ -160,13 +160,13 @@ fn refused() -> Calibration {
         finding(
             "not-laminar",
             &[14, 15],
-            "the two points above Re 1900 need more pressure than the line: flow is leaving the laminar regime.",
+            "The two points above Re 1900 need more pressure than the line: flow is leaving the laminar regime.",
             true,
         ),
         finding(
             "stated-uncertainty-too-large",
             &[],
-            "the points scatter less than their uncertainties say; a part of them may be shared.",
+            "The points scatter less than their uncertainties say; a part of them may be shared.",
             false,
         ),
     ];
@@ -267,9 +267,9 @@ fn a_good_run_states_its_result() {
     let page = checked(&simulated(12));
     keep("accepted.html", &page);
     assert!(page.contains("<strong>Accepted:</strong>"));
-    assert!(page.contains("(3.4120&#8239;±&#8239;0.0038)"));
+    assert!(page.contains("(3.4120&nbsp;±&nbsp;0.0038)"));
     assert!(page.contains("Nothing was found against this run."));
-    assert!(page.contains("coverage factor k = 2.00"));
+    assert!(page.contains("coverage factor <i>k</i> = 2.00;"));
     assert!(page.contains("EB-0042") && page.contains("12 of 12") && page.contains("5C1A90E7"));
     assert_eq!(page.matches("<figcaption>").count(), 3);
 }
@@ -279,7 +279,7 @@ fn a_refused_run_says_why() {
     let run = refused();
     let page = checked(&run);
     keep("refused.html", &page);
-    assert!(page.contains("<strong>Refused:</strong> the two points above Re 1900"));
+    assert!(page.contains("<strong>Refused:</strong> The two points above Re 1900"));
     assert!(run.findings.iter().all(|finding| page.contains(&finding.message)));
     assert!(page.contains("lines 14 and 15") && page.contains("◇ no"));
     assert!(page.contains("The Reynolds number reached 2140"));
@@ -292,7 +292,7 @@ fn an_overridden_run_gives_the_reason_and_what_it_overrules() {
     let page = checked(&run);
     keep("overridden.html", &page);
     assert!(page.contains("<strong>Used although refused:</strong> range limited to Re 1900 by the customer"));
-    assert!(page.contains("The run was refused because: the two points"));
+    assert!(page.contains("The run was refused because: The two points"));
 }
 
 #[test]

@@ -96,10 +96,10 @@ fn label_exponent(magnitude: f64) -> i32 {
     }
 }
 
-/// The 1, 2 or 5 times a power of ten at or above `rough`.
+/// The 1, 2 or 5 times a power of ten about as large as `rough`.
 fn nice_step(rough: f64) -> f64 {
     let power = 10f64.powf(rough.log10().floor());
-    [1.0, 2.0, 5.0].into_iter().map(|m| m * power).find(|step| *step >= rough * 0.999_999).unwrap_or(10.0 * power)
+    [1.0, 2.0, 5.0].into_iter().map(|m| m * power).find(|step| *step >= rough * 0.7).unwrap_or(10.0 * power)
 }
 
 fn linear_ticks(low: f64, high: f64, step: f64, exponent: i32) -> Vec<Tick> {
@@ -149,7 +149,7 @@ mod tests {
 
     #[test]
     fn linear_labels_are_round() {
-        assert_eq!(labels(&Axis::linear(-0.3, 1.02, 5)), ["0.0", "0.5", "1.0"]);
+        assert_eq!(labels(&Axis::linear(-0.3, 1.02, 5)), ["−0.2", "0.0", "0.2", "0.4", "0.6", "0.8", "1.0"]);
         let large = Axis::linear(3.38e11, 3.64e11, 6);
         assert_eq!((large.exponent, labels(&large)), (9, vec!["340", "345", "350", "355", "360"]));
     }

@@ -3,11 +3,14 @@
 use super::axis::Axis;
 use super::figure::{Anchor, Figure, Frame, Rendition, Shape};
 use super::key::{Key, Sign};
+use super::label::Labels;
 use super::numbers;
 use crate::calibrate::outcome::{Calibration, ResidualRow};
 
 /// Steps along the bands.
 const STEPS: usize = 48;
+/// At most this many labels.
+const LABELS: usize = 8;
 
 /// The fitted line with both bands.
 struct Line {
@@ -67,7 +70,7 @@ pub fn draw(calibration: &Calibration, rendition: Rendition) -> String {
     let line = Line::of(calibration);
     let title = "Characteristic of the element";
     let id = format!("characteristic-{}", rendition.class());
-    let height = if rendition == Rendition::Wide { 420.0 } else { 380.0 };
+    let height = if rendition == Rendition::Wide { 370.0 } else { 380.0 };
     let mut figure = Figure::new(&id, rendition, height, title, &description(calibration));
     let key = Key::new(key_items(calibration, &line), rendition.width());
     let frame = frame(calibration, &line, rendition, key.height(), height);
@@ -82,6 +85,7 @@ pub fn draw(calibration: &Calibration, rendition: Rendition) -> String {
     for row in &calibration.residuals {
         draw_point(&mut figure, &frame, row);
     }
+    draw_labels(&mut figure, &frame, &calibration.residuals);
     figure.finish()
 }
 
@@ -180,6 +184,19 @@ fn draw_point(figure: &mut Figure, frame: &Frame, row: &ResidualRow) {
     }
     let label = format!("line {}: {} % of flow", row.line, numbers::signed(row.residual_rel * 100.0, 3));
     frame.point(figure, (x, y), row.used, &label);
+}
+
+/// Line numbers beside the first few points the fit did not use.
+fn draw_labels(figure: &mut Figure, frame: &Frame, rows: &[ResidualRow]) {
+    let mut labels = Labels::new(frame);
+    for row in rows {
+        let (x, y, half) = (finite(row.x), finite(row.y), 2.0 * finite(row.u_y));
+        labels.avoid_marker(frame.at(x, y));
+        labels.avoid_bar(frame.at(x, y - half), frame.at(x, y + half));
+    }
+    for row in rows.iter().filter(|row| !row.used).take(LABELS) {
+        labels.write(figure, frame.at(finite(row.x), finite(row.y)), &format!("line {}", row.line));
+    }
 }
 
 /// Smallest and largest of `values`; zero and zero when there are none.

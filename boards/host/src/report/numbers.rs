@@ -8,6 +8,8 @@
 pub const MISSING: &str = "–";
 /// Thin, non-breaking space between groups of three digits.
 const THIN: char = '\u{202f}';
+/// Non-breaking space around signs.
+const SPACE: char = '\u{a0}';
 /// Places beyond these are not written out as plain digits.
 const PLACES: std::ops::RangeInclusive<i32> = -18..=18;
 
@@ -66,7 +68,7 @@ pub fn significant(value: f64, digits: i32) -> String {
     if (-4..6).contains(&exponent) {
         return at_place(value, exponent - digits + 1);
     }
-    format!("{}{THIN}×{THIN}10{}", fixed(scaled(value, exponent), digits - 1), superscript(exponent))
+    format!("{}{SPACE}×{SPACE}10{}", fixed(scaled(value, exponent), digits - 1), superscript(exponent))
 }
 
 /// A relative uncertainty in percent, two significant digits, without the sign `%`.
@@ -74,13 +76,18 @@ pub fn percent(relative: f64) -> String {
     significant(relative * 100.0, 2)
 }
 
-/// A probability: two significant digits, `< 0.001` below that.
+/// Degrees of freedom: whole ones without decimals.
+pub fn freedom(dof: f64) -> String {
+    fixed(dof, if (dof - dof.round()).abs() < 0.05 { 0 } else { 1 })
+}
+
+/// A probability with its sign of equality: two significant digits, `< 0.001` below that.
 pub fn probability(p: f64) -> String {
     match p {
-        p if !p.is_finite() => MISSING.to_string(),
-        p if p < 0.001 => format!("<{THIN}0.001"),
-        p if p > 0.99 => fixed(p, 3),
-        p => significant(p, 2),
+        p if !p.is_finite() => format!("={SPACE}{MISSING}"),
+        p if p < 0.001 => format!("<{SPACE}0.001"),
+        p if p > 0.99 => format!("={SPACE}{}", fixed(p, 3)),
+        p => format!("={SPACE}{}", significant(p, 2)),
     }
 }
 
@@ -218,7 +225,7 @@ mod tests {
         assert_eq!(fixed(1234.0, 0), "1234");
         assert_eq!(signed(0.25, 2), "+0.25");
         assert_eq!(signed(0.001, 2), "0.00");
-        assert_eq!(significant(2.5e-7, 2), "2.5\u{202f}×\u{202f}10⁻⁷");
-        assert_eq!(probability(0.000_04), "<\u{202f}0.001");
+        assert_eq!(significant(2.5e-7, 2), "2.5\u{a0}×\u{a0}10⁻⁷");
+        assert_eq!(probability(0.000_04), "<\u{a0}0.001");
     }
 }

@@ -6,7 +6,7 @@ use super::figure::{Anchor, Figure, Frame, Rendition};
 use super::residuals::LITRES_PER_MINUTE;
 use crate::calibrate::outcome::{Calibration, UncertaintyRow};
 
-const HEIGHT: f64 = 350.0;
+const HEIGHT: f64 = 290.0;
 /// Least distance between the labels of two curves.
 const LABEL_STEP: f64 = 16.0;
 

@@ -3,6 +3,7 @@
 use super::axis::Axis;
 use super::characteristic::{finite, limits};
 use super::figure::{Anchor, Figure, Frame, Rendition};
+use super::label::Labels;
 use super::numbers;
 use crate::calibrate::outcome::{Calibration, ResidualRow};
 
@@ -12,7 +13,7 @@ pub const LITRES_PER_MINUTE: f64 = 60_000.0;
 const NOTABLE: f64 = 3.0;
 /// At most this many labels.
 const LABELS: usize = 8;
-const HEIGHT: f64 = 300.0;
+const HEIGHT: f64 = 270.0;
 
 /// Draws the panel in percent of flow.
 pub fn draw_percent(calibration: &Calibration) -> String {
@@ -31,7 +32,10 @@ pub fn draw_percent(calibration: &Calibration) -> String {
         }
         frame.point(&mut figure, (x, y), row.used, &describe(row));
     }
-    draw_labels(&mut figure, &frame, rows, percent);
+    draw_labels(&mut figure, &frame, rows, percent, |row| {
+        let half = 2.0 * u_percent(row);
+        (percent(row) - half, percent(row) + half)
+    });
     figure.finish()
 }
 
@@ -52,7 +56,7 @@ pub fn draw_units(calibration: &Calibration) -> String {
         figure.line(frame.at(x, 0.0), frame.at(x, y), "bar");
         frame.point(&mut figure, (x, y), row.used, &describe(row));
     }
-    draw_labels(&mut figure, &frame, rows, units);
+    draw_labels(&mut figure, &frame, rows, units, |row| (0.0, units(row)));
     figure.finish()
 }
 
@@ -104,20 +108,25 @@ fn zero_line(figure: &mut Figure, frame: &Frame) {
     figure.line((frame.left, y), (frame.right, y), "zero");
 }
 
-/// Line numbers beside the most remarkable points, largest first, left out where they would meet another one.
-fn draw_labels(figure: &mut Figure, frame: &Frame, rows: &[ResidualRow], value: impl Fn(&ResidualRow) -> f64) {
+/// Line numbers beside the most remarkable points, largest first; with the residual itself where it is off the frame.
+fn draw_labels(
+    figure: &mut Figure,
+    frame: &Frame,
+    rows: &[ResidualRow],
+    value: impl Fn(&ResidualRow) -> f64,
+    bar: impl Fn(&ResidualRow) -> (f64, f64),
+) {
+    let mut labels = Labels::new(frame);
+    for row in rows {
+        let (from, to) = bar(row);
+        labels.avoid_marker(frame.at(flow(row), value(row)));
+        labels.avoid_bar(frame.at(flow(row), from), frame.at(flow(row), to));
+    }
     let mut notable: Vec<&ResidualRow> = rows.iter().filter(|row| !row.used || units(row).abs() > NOTABLE).collect();
     notable.sort_by(|a, b| units(b).abs().total_cmp(&units(a).abs()));
-    let mut taken: Vec<(f64, f64)> = Vec::new();
     for row in notable.into_iter().take(LABELS) {
-        let (x, y) = frame.at(flow(row), value(row));
-        let text = format!("line {}", row.line);
-        let width = 6.8 * text.chars().count() as f64;
-        let left = if x + 9.0 + width < frame.right { x + 9.0 } else { x - 9.0 - width };
-        let y = y.clamp(frame.top + 10.0, frame.bottom - 4.0);
-        if taken.iter().all(|(other, level)| (left - other).abs() > width || (y - level).abs() > 14.0) {
-            figure.text((left, y + 4.0), Anchor::Start, "note halo", &text);
-            taken.push((left, y));
-        }
+        let beyond = !frame.y.contains(value(row));
+        let size = if beyond { format!(": {}", numbers::significant(value(row), 2)) } else { String::new() };
+        labels.write(figure, frame.at(flow(row), value(row)), &format!("line {}{size}", row.line));
     }
 }

@@ -66,7 +66,7 @@ fn budget_heading(at: f64) -> String {
     if at == 1.0 {
         return "At the largest calibrated pressure drop (full scale)".to_string();
     }
-    format!("At {} % of the largest calibrated pressure drop", numbers::significant(at * 100.0, 3))
+    format!("At {} % of the largest calibrated pressure drop", numbers::freedom(at * 100.0))
 }
 
 fn budget_row(row: &BudgetRow, variance: f64, decimals: i32) -> Value {
@@ -75,7 +75,7 @@ fn budget_row(row: &BudgetRow, variance: f64, decimals: i32) -> Value {
     // A relative source is shown in percent, so its sensitivity is in percent per percent.
     let per_percent = if row.unit == "rel" { 1.0 } else { 100.0 };
     context! {
-        source => &row.source,
+        source => words::capitalised(&row.source),
         part => &row.part,
         u => u,
         unit => unit,
@@ -84,7 +84,7 @@ fn budget_row(row: &BudgetRow, variance: f64, decimals: i32) -> Value {
         contribution => numbers::fixed(row.contribution.abs() * 100.0, decimals),
         share => numbers::fixed(share, 0),
         bar => format!("{:.1}", if share.is_finite() { share.clamp(0.0, 100.0) } else { 0.0 }),
-        freedom => row.degrees_of_freedom.map_or_else(|| "∞".to_string(), |dof| numbers::significant(dof, 2)),
+        freedom => row.degrees_of_freedom.map_or_else(|| "∞".to_string(), numbers::freedom),
     }
 }
 

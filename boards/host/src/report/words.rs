@@ -59,22 +59,16 @@ pub fn finding_lines(finding: &Finding) -> String {
     }
 }
 
-/// The uncertainty statement: what is reported and with which coverage factor.
-pub fn uncertainty_statement(calibration: &Calibration) -> String {
-    let factors: Vec<f64> =
-        calibration.uncertainty.iter().map(|row| row.coverage_factor).filter(|k| k.is_finite()).collect();
-    let (low, high) = super::characteristic::limits(factors.iter().copied());
+/// The coverage factor of the expanded uncertainties, to follow the letter k; empty when none is known.
+pub fn coverage(calibration: &Calibration) -> String {
+    let factors = calibration.uncertainty.iter().map(|row| row.coverage_factor).filter(|k| k.is_finite());
+    let (low, high) = super::characteristic::limits(factors);
     let (low, high) = (numbers::fixed(low, 2), numbers::fixed(high, 2));
-    let factor = match factors.as_slice() {
-        [] => "a coverage factor k".to_string(),
-        _ if low == high => format!("the coverage factor k = {low}"),
-        _ => format!("a coverage factor k between {low} and {high}, from the effective degrees of freedom"),
-    };
-    format!(
-        "The expanded uncertainty U is the combined standard uncertainty multiplied by {factor}; the interval it defines \
-         has a level of confidence of approximately 95 % (JCGM 100:2008, clause 6). U is rounded to two significant \
-         digits, and the value it belongs to is rounded to the same place (clause 7.2.6)."
-    )
+    match (calibration.uncertainty.is_empty(), low == high) {
+        (true, _) => String::new(),
+        (_, true) => format!("= {low}"),
+        _ => format!("between {low} and {high}, from the effective degrees of freedom"),
+    }
 }
 
 /// Where the scale of the type A uncertainty comes from.
