@@ -99,10 +99,8 @@ fn findings(calibration: &Calibration) -> Vec<Value> {
 
 fn key_numbers(calibration: &Calibration) -> Value {
     let c = calibration;
-    let (low, high) = (range::lowest(c), range::full_scale(c));
-    let litres = |row: &Option<UncertaintyRow>| {
-        row.as_ref().map_or_else(|| MISSING.to_string(), |row| numbers::significant(row.flow * LITRES_PER_MINUTE, 3))
-    };
+    let flows = range::flows(c);
+    let litres = |flow: f64| numbers::significant(flow * LITRES_PER_MINUTE, 3);
     context! {
         a => coefficient(c.a, c.u_a),
         b => coefficient(c.b, c.u_b),
@@ -111,15 +109,15 @@ fn key_numbers(calibration: &Calibration) -> Value {
         chi_squared => numbers::fixed(c.chi_squared, 1),
         freedom => numbers::freedom(c.degrees_of_freedom),
         p_value => numbers::probability(c.p_value),
-        flow_low => litres(&low),
-        flow_high => litres(&high),
+        flow_low => flows.map(|(low, _)| litres(low)),
+        flow_high => flows.map(|(_, high)| litres(high)),
         x_low => numbers::significant(c.range.x_min, 3),
         x_high => numbers::significant(c.range.x_max, 3),
         drop_high => numbers::significant(c.range.pressure_drop_max, 4),
         reynolds => c.range.reynolds_max.map_or_else(|| MISSING.to_string(), |re| numbers::fixed(re, 0)),
         a_ratio => ratio(c.geometry.a_ratio),
         b_ratio => ratio(c.geometry.b_ratio),
-        full_scale => uncertainty_at(high),
+        full_scale => uncertainty_at(range::full_scale(c)),
         tenth => uncertainty_at(range::at_share(c, 0.1)),
     }
 }

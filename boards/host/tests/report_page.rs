@@ -269,7 +269,7 @@ fn a_good_run_states_its_result() {
     assert!(page.contains("<strong>Accepted:</strong>"));
     assert!(page.contains("(3.4120&nbsp;±&nbsp;0.0038)"));
     assert!(page.contains("Nothing was found against this run."));
-    assert!(page.contains("coverage factor <i>k</i> = 2.00;"));
+    assert!(page.contains("coverage factor <i>k</i>&nbsp;=\u{a0}2.00;"));
     assert!(page.contains("EB-0042") && page.contains("12 of 12") && page.contains("5C1A90E7"));
     assert_eq!(page.matches("<figcaption>").count(), 3);
 }
@@ -293,6 +293,22 @@ fn an_overridden_run_gives_the_reason_and_what_it_overrules() {
     keep("overridden.html", &page);
     assert!(page.contains("<strong>Used although refused:</strong> range limited to Re 1900 by the customer"));
     assert!(page.contains("The run was refused because: The two points"));
+}
+
+#[test]
+fn an_uncertainty_that_grows_steeply_is_drawn_and_said() {
+    let mut run = simulated(9);
+    for row in &mut run.uncertainty {
+        row.sensors *= 0.1 + 0.02 * (FULL_SCALE / row.flow).powi(2);
+        row.expanded = 2.2 * f64::hypot(row.sensors, row.common);
+        row.coverage_factor = 2.2;
+    }
+    run.b_from_prior = true;
+    run.uncertainty_basis = "residuals".into();
+    run.findings = vec![finding("b-from-prior", &[], "The points do not tell b; the geometry does.", false)];
+    let page = checked(&run);
+    keep("steep.html", &page);
+    assert!(page.contains("at the lowest flow") && page.contains("rests on the geometry"));
 }
 
 #[test]

@@ -70,7 +70,7 @@ pub fn draw(calibration: &Calibration, rendition: Rendition) -> String {
     let line = Line::of(calibration);
     let title = "Characteristic of the element";
     let id = format!("characteristic-{}", rendition.class());
-    let height = if rendition == Rendition::Wide { 370.0 } else { 380.0 };
+    let height = if rendition == Rendition::Wide { 352.0 } else { 380.0 };
     let mut figure = Figure::new(&id, rendition, height, title, &description(calibration));
     let key = Key::new(key_items(calibration, &line), rendition.width());
     let frame = frame(calibration, &line, rendition, key.height(), height);
@@ -85,7 +85,7 @@ pub fn draw(calibration: &Calibration, rendition: Rendition) -> String {
     for row in &calibration.residuals {
         draw_point(&mut figure, &frame, row);
     }
-    draw_labels(&mut figure, &frame, &calibration.residuals);
+    draw_labels(&mut figure, &frame, &line, &calibration.residuals);
     figure.finish()
 }
 
@@ -130,7 +130,7 @@ fn frame(calibration: &Calibration, line: &Line, rendition: Rendition, key: f64,
     let wide = rendition == Rendition::Wide;
     Frame {
         left: 48.0,
-        top: key + 38.0,
+        top: key + 40.0,
         right: rendition.width() - if wide { 50.0 } else { 8.0 },
         bottom: height - 46.0,
         x: Axis::linear(x_low, x_high + 0.03 * (x_high - x_low), if wide { 7 } else { 4 }),
@@ -158,7 +158,7 @@ fn percent_scale(figure: &mut Figure, frame: &Frame, a: f64) {
         figure.line((x, y), (x + 5.0, y), "axis");
         figure.text((x + 9.0, y + 4.0), Anchor::Start, "tick", &tick.label);
     }
-    figure.text((718.0, frame.top - 10.0), Anchor::End, "title", "y/a − 1, %");
+    figure.text((718.0, frame.top - 14.0), Anchor::End, "title", "y/a − 1, %");
 }
 
 fn draw_band(figure: &mut Figure, frame: &Frame, band: &[(f64, f64, f64)], class: &str) {
@@ -187,8 +187,11 @@ fn draw_point(figure: &mut Figure, frame: &Frame, row: &ResidualRow) {
 }
 
 /// Line numbers beside the first few points the fit did not use.
-fn draw_labels(figure: &mut Figure, frame: &Frame, rows: &[ResidualRow]) {
+fn draw_labels(figure: &mut Figure, frame: &Frame, line: &Line, rows: &[ResidualRow]) {
     let mut labels = Labels::new(frame);
+    for pair in line.band(&line.fit).windows(2) {
+        labels.avoid_bar(frame.at(pair[0].0, pair[0].1), frame.at(pair[1].0, pair[1].1));
+    }
     for row in rows {
         let (x, y, half) = (finite(row.x), finite(row.y), 2.0 * finite(row.u_y));
         labels.avoid_marker(frame.at(x, y));

@@ -206,7 +206,7 @@ impl Frame {
         }
         figure.line((self.left, self.bottom), (self.right, self.bottom), "axis");
         figure.text((self.right, self.bottom + 37.0), Anchor::End, "title", x_title);
-        figure.text((2.0, self.top - 10.0), Anchor::Start, "title", y_title);
+        figure.text((2.0, self.top - 14.0), Anchor::Start, "title", y_title);
     }
 
     /// A marker for a point: on the spot inside the frame, a chevron at the edge outside it.

@@ -34,25 +34,31 @@ impl Area {
 #[derive(Debug, Clone)]
 pub struct Labels {
     frame: Area,
+    /// Markers and labels, which must not be covered.
     taken: Vec<Area>,
+    /// Bars and lines, which are covered only where nothing else is free.
+    crossed: Vec<Area>,
 }
 
 impl Labels {
     /// Nothing taken yet.
     pub fn new(frame: &Frame) -> Self {
         let frame = Area { left: frame.left, top: frame.top - 2.0, right: frame.right, bottom: frame.bottom };
-        Self { frame, taken: Vec::new() }
+        Self { frame, taken: Vec::new(), crossed: Vec::new() }
     }
 
-    /// Keeps clear of a marker.
+    /// Keeps clear of a marker; those on the frame's edge are chevrons that reach into it.
     pub fn avoid_marker(&mut self, (x, y): (f64, f64)) {
-        self.taken.push(Area { left: x - 6.5, top: y - 6.0, right: x + 6.5, bottom: y + 6.0 });
+        let below = if y <= self.frame.top + 3.0 { 12.0 } else { 6.0 };
+        let above = if y >= self.frame.bottom - 1.0 { 12.0 } else { 6.0 };
+        self.taken.push(Area { left: x - 6.5, top: y - above, right: x + 6.5, bottom: y + below });
     }
 
-    /// Keeps clear of an upright bar.
+    /// Keeps clear of a bar, or of a short piece of a line.
     pub fn avoid_bar(&mut self, from: (f64, f64), to: (f64, f64)) {
-        let (top, bottom) = (from.1.min(to.1), from.1.max(to.1));
-        self.taken.push(Area { left: from.0 - 2.0, top, right: from.0 + 2.0, bottom });
+        let (left, right) = (from.0.min(to.0) - 2.0, from.0.max(to.0) + 2.0);
+        let (top, bottom) = (from.1.min(to.1) - 2.0, from.1.max(to.1) + 2.0);
+        self.crossed.push(Area { left, top, right, bottom });
     }
 
     /// Writes `text` beside the point at `at`, or nowhere when there is no room.
@@ -62,9 +68,11 @@ impl Labels {
             let top = y + dy - HEIGHT / 2.0;
             Area { left, top, right: left + width, bottom: top + HEIGHT }
         };
-        let mut places = OFFSETS.iter().flat_map(|dy| [beside(x + GAP, *dy), beside(x - GAP - width, *dy)]);
+        let places = OFFSETS.iter().flat_map(|dy| [beside(x + GAP, *dy), beside(x - GAP - width, *dy)]);
         let free = |area: &Area| self.frame.holds(area) && !self.taken.iter().any(|other| area.meets(other));
-        let Some(place) = places.find(free) else { return };
+        let free: Vec<Area> = places.filter(free).collect();
+        let clear = free.iter().find(|area| !self.crossed.iter().any(|other| area.meets(other)));
+        let Some(place) = clear.or(free.first()).copied() else { return };
         // The text keeps to the side of its point.
         let baseline = place.top + HEIGHT - 2.5;
         if place.left > x {

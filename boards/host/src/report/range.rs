@@ -6,7 +6,7 @@ use super::figure::{Anchor, Figure, Frame, Rendition};
 use super::residuals::LITRES_PER_MINUTE;
 use crate::calibrate::outcome::{Calibration, UncertaintyRow};
 
-const HEIGHT: f64 = 290.0;
+const HEIGHT: f64 = 276.0;
 /// Least distance between the labels of two curves.
 const LABEL_STEP: f64 = 16.0;
 
@@ -36,6 +36,14 @@ pub fn full_scale(calibration: &Calibration) -> Option<UncertaintyRow> {
 /// The row at the lower end of the range.
 pub fn lowest(calibration: &Calibration) -> Option<UncertaintyRow> {
     sorted(calibration).first().map(|row| (*row).clone())
+}
+
+/// Smallest and largest flow calibrated, m3/s: those of the uncertainties, else those of the points used.
+pub fn flows(calibration: &Calibration) -> Option<(f64, f64)> {
+    let stated: Vec<f64> = sorted(calibration).iter().map(|row| row.flow).collect();
+    let used = calibration.residuals.iter().filter(|row| row.used && row.reference_flow.is_finite());
+    let flows = if stated.is_empty() { used.map(|row| row.reference_flow).collect() } else { stated };
+    (!flows.is_empty()).then(|| limits(flows.into_iter()))
 }
 
 /// The row at `share` of the pressure drop at full scale, interpolated in the logarithms; absent outside the range.
@@ -95,13 +103,13 @@ fn frame(rows: &[&UncertaintyRow], rendition: Rendition) -> Frame {
     let parts = rows.iter().flat_map(|row| CURVES.map(|(_, _, part)| part(row) * 100.0));
     let smallest = parts.filter(|u| *u > 0.0).fold(most, f64::min);
     let y = if least > 0.0 && most > 6.0 * least {
-        Axis::logarithmic(smallest.max(most / 1000.0) / 1.3, most * 1.3)
+        Axis::logarithmic(smallest.max(most * 1e-4) / 1.3, most * 1.3)
     } else {
         Axis::linear(0.0, most * 1.08, 6)
     };
     Frame {
         left: 48.0,
-        top: 30.0,
+        top: 32.0,
         right: rendition.width() - 84.0,
         bottom: HEIGHT - 46.0,
         x: Axis::logarithmic(low, high),

@@ -50,7 +50,7 @@ pub fn draw_units(calibration: &Calibration) -> String {
     figure.rectangle((left, upper), (frame.right, frame.at(0.0, -2.0).1), "band-all");
     frame.draw(&mut figure, "reference flow, L/min", "residual, in u");
     zero_line(&mut figure, &frame);
-    figure.text((frame.right, frame.top - 10.0), Anchor::End, "note", "shaded: within ±2");
+    figure.text((frame.right, frame.top - 14.0), Anchor::End, "note", "shaded: within ±2");
     for row in rows {
         let (x, y) = (flow(row), units(row));
         figure.line(frame.at(x, 0.0), frame.at(x, y), "bar");
@@ -95,7 +95,7 @@ fn frame(rows: &[ResidualRow], reach: f64) -> Frame {
     let (low, high) = limits(rows.iter().map(flow));
     Frame {
         left: 48.0,
-        top: 30.0,
+        top: 32.0,
         right: Rendition::Panel.width() - 8.0,
         bottom: HEIGHT - 46.0,
         x: Axis::spanning(low, high, 5),

@@ -66,7 +66,7 @@ pub fn coverage(calibration: &Calibration) -> String {
     let (low, high) = (numbers::fixed(low, 2), numbers::fixed(high, 2));
     match (calibration.uncertainty.is_empty(), low == high) {
         (true, _) => String::new(),
-        (_, true) => format!("= {low}"),
+        (_, true) => format!("=\u{a0}{low}"),
         _ => format!("between {low} and {high}, from the effective degrees of freedom"),
     }
 }
@@ -118,7 +118,9 @@ fn uneven(calibration: &Calibration) -> Option<String> {
     let (low, high) = (range::lowest(calibration)?.expanded, range::full_scale(calibration)?.expanded);
     let text = || {
         let (low, high) = (numbers::percent(low), numbers::percent(high));
-        format!("The uncertainty is not the same everywhere: {low} % at the lowest flow, {high} % at full scale.")
+        format!(
+            "The uncertainty is not the same everywhere: {low}\u{a0}% at the lowest flow, {high}\u{a0}% at full scale."
+        )
     };
     (low > 4.0 * high).then(text)
 }
