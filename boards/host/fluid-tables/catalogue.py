@@ -98,7 +98,7 @@ FLUIDS = [
           "viscosity: dilute gas 0.11 % (May, Berg, Moldover 2007), widened by judgement for the pressure dependence, "
           "whose published residual term (0.7 % at 100 kPa) is left out as unphysical at low density; ratio: judgement",
           23.0183e-6, True),
-    Fluid("water", "Water", (0.1, 95.0), (9e4, 1e6),
+    Fluid("water", "Water", (0.1, 95.0), (9e4, 2.5e6),
           "IAPWS R12-08: Huber et al., J. Phys. Chem. Ref. Data 38 (2009) 101",
           "IAPWS-95: Wagner & Pruss, J. Phys. Chem. Ref. Data 31 (2002) 387", 0.0017, 0.001,
           "viscosity: 0.17 % at 20 C (from memory), 1 % stated over the whole liquid; ratio: 0.05 % for 0-40 C (Kestin, "
