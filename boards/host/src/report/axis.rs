@@ -47,7 +47,8 @@ impl Axis {
         if low > 0.0 && high / low > 10.0 {
             Self::logarithmic(low / 1.2, high * 1.2)
         } else {
-            Self::linear(low.min(0.0), high * 1.05, target)
+            let high = if high > 0.0 || low < 0.0 { high * 1.05 } else { 1.0 };
+            Self::linear(low.min(0.0), high, target)
         }
     }
 

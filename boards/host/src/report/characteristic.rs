@@ -82,8 +82,12 @@ pub fn draw(calibration: &Calibration, rendition: Rendition) -> String {
         percent_scale(&mut figure, &frame, line.a);
     }
     draw_line(&mut figure, &frame, &line);
+    figure.crowd(calibration.residuals.len());
     for row in &calibration.residuals {
         draw_point(&mut figure, &frame, row);
+    }
+    if figure.is_crowded() {
+        draw_line(&mut figure, &frame, &line);
     }
     draw_labels(&mut figure, &frame, &line, &calibration.residuals);
     figure.finish()

@@ -6,6 +6,9 @@
 use super::axis::Axis;
 use std::fmt::Write;
 
+/// More points than this make a crowd.
+const CROWD: usize = 100;
+
 /// Which rendition of a figure: one for a page, one for a narrow window, so that text keeps its size in both.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Rendition {
@@ -67,6 +70,8 @@ pub struct Figure {
     height: f64,
     head: String,
     body: String,
+    /// Whether there are so many points that they are drawn small and their bars faint.
+    dense: bool,
 }
 
 impl Figure {
@@ -80,7 +85,17 @@ impl Figure {
             escape(description),
             class = rendition.class(),
         );
-        Self { width, height, head, body: String::new() }
+        Self { width, height, head, body: String::new(), dense: false }
+    }
+
+    /// Draws small markers and faint bars when there are many points.
+    pub fn crowd(&mut self, points: usize) {
+        self.dense = points > CROWD;
+    }
+
+    /// Whether there are many points.
+    pub fn is_crowded(&self) -> bool {
+        self.dense
     }
 
     /// A straight line.
@@ -131,7 +146,10 @@ impl Figure {
         };
         let title = if label.is_empty() { String::new() } else { format!("<title>{}</title>", escape(label)) };
         let element = match shape {
-            Shape::Disc => format!("<circle class=\"used\" cx=\"{x:.1}\" cy=\"{y:.1}\" r=\"3.4\">{title}</circle>\n"),
+            Shape::Disc => {
+                let r = if self.dense { 1.7 } else { 3.4 };
+                format!("<circle class=\"used\" cx=\"{x:.1}\" cy=\"{y:.1}\" r=\"{r}\">{title}</circle>\n")
+            }
             Shape::Diamond => {
                 let d = outline(&[(0.0, -5.2), (5.2, 0.0), (0.0, 5.2), (-5.2, 0.0)]);
                 format!("<path class=\"unused\" d=\"{d}Z\">{title}</path>\n")
@@ -150,7 +168,8 @@ impl Figure {
 
     /// The finished SVG element.
     pub fn finish(self) -> String {
-        format!("{}{}</svg>", self.head, self.body)
+        let class = if self.dense { "dense" } else { "sparse" };
+        format!("{}<g class=\"{class}\">\n{}</g>\n</svg>", self.head, self.body)
     }
 
     /// A position brought inside the drawing.

@@ -25,6 +25,7 @@ pub fn draw_percent(calibration: &Calibration) -> String {
     let frame = frame(rows, reach);
     frame.draw(&mut figure, "reference flow, L/min", "residual, % of flow");
     zero_line(&mut figure, &frame);
+    figure.crowd(rows.len());
     for row in rows {
         let (x, y, half) = (flow(row), percent(row), 2.0 * u_percent(row));
         if frame.y.contains(y) && half > 0.0 {
@@ -50,6 +51,7 @@ pub fn draw_units(calibration: &Calibration) -> String {
     figure.rectangle((left, upper), (frame.right, frame.at(0.0, -2.0).1), "band-all");
     frame.draw(&mut figure, "reference flow, L/min", "residual, in u");
     zero_line(&mut figure, &frame);
+    figure.crowd(rows.len());
     figure.text((frame.right, frame.top - 14.0), Anchor::End, "note", "shaded: within ±2");
     for row in rows {
         let (x, y) = (flow(row), units(row));
