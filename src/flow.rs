@@ -205,12 +205,7 @@ impl<'a> Meter<'a> {
         let (drop, p) = (reading.pressure_drop.as_pascals(), reading.line_pressure.as_pascals());
         Uncertainty {
             fit: fit_part(s, &self.quality),
-            common: common_part(
-                s,
-                &self.quality,
-                self.u_viscosity(reading.temperature),
-                self.calibrated_on_this_fluid,
-            ),
+            common: common_part(s, &self.quality, self.u_viscosity(reading.temperature), self.calibrated_on_this_fluid),
             sensors: sensor_part(s, sensors, drop, p),
         }
     }

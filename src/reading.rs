@@ -20,11 +20,7 @@ pub struct Reading {
 
 impl Reading {
     /// A reading of a dry gas or a liquid.
-    pub const fn new(
-        pressure_drop: PressureDrop,
-        temperature: Temperature,
-        line_pressure: AbsolutePressure,
-    ) -> Self {
+    pub const fn new(pressure_drop: PressureDrop, temperature: Temperature, line_pressure: AbsolutePressure) -> Self {
         Self { pressure_drop, temperature, line_pressure, relative_humidity: None }
     }
 

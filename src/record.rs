@@ -84,13 +84,7 @@ impl Record {
     ///
     /// # Errors
     /// Names the field that makes no sense.
-    pub fn new(
-        serial: &str,
-        date: u32,
-        element: Element,
-        fluid: StoredFluid,
-        quality: Quality,
-    ) -> Result<Self, Error> {
+    pub fn new(serial: &str, date: u32, element: Element, fluid: StoredFluid, quality: Quality) -> Result<Self, Error> {
         let record = Self {
             serial: String::try_from(serial).map_err(|_| Error::BadText { field: "serial", most: SERIAL_LENGTH })?,
             date,
@@ -394,17 +388,7 @@ impl Reader<'_> {
         let entrance = self.numbers()?;
         let constants =
             ShapeConstants { friction_reynolds, kinetic_loss, kinetic_energy_factor, thermal_factor, entrance };
-        Ok(Element {
-            shape,
-            constants,
-            a,
-            b,
-            open_area,
-            hydraulic_diameter,
-            length,
-            expansion,
-            reference_temperature,
-        })
+        Ok(Element { shape, constants, a, b, open_area, hydraulic_diameter, length, expansion, reference_temperature })
     }
     fn fluid(&mut self, phase: u8) -> Result<StoredFluid, Error> {
         let phases = [Phase::Gas, Phase::Liquid];

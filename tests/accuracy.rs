@@ -49,6 +49,11 @@ fn single_precision_agrees_with_double_through_the_whole_walk() {
             }
         }
     }
-    println!("single against double: worst {:.3e} at {}, rms {:.3e}, {count} readings", worst.0, worst.1, (sum / count as f64).sqrt());
+    println!(
+        "single against double: worst {:.3e} at {}, rms {:.3e}, {count} readings",
+        worst.0,
+        worst.1,
+        (sum / count).sqrt()
+    );
     assert!(worst.0 < tolerance::SINGLE_AGAINST_DOUBLE, "{worst:?}");
 }

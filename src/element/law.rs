@@ -76,8 +76,7 @@ impl<F: Real> Prepared<F> {
     pub fn new(element: &Element, fluid: PropertiesAt<F>, molar_mass: F, temperature: F, line_pressure: F) -> Self {
         let one = F::of(1.0);
         let shape = &element.constants;
-        let stretch =
-            one + F::stored(element.expansion) * (temperature - F::stored(element.reference_temperature));
+        let stretch = one + F::stored(element.expansion) * (temperature - F::stored(element.reference_temperature));
         let dh = F::stored(element.hydraulic_diameter);
         let k1 = F::stored(shape.kinetic_loss);
         let specific_gas_constant = F::of(crate::fluid::properties::MOLAR_GAS_CONSTANT) / molar_mass;
@@ -107,8 +106,7 @@ impl<F: Real> Prepared<F> {
         let mean = self.line_pressure - drop * F::of(0.5);
         let x = drop.magnitude() / mean;
         let w = x * x;
-        let series = F::of(1.0 / 12.0)
-            + w * (F::of(1.0 / 80.0) + w * (F::of(1.0 / 448.0) + w * F::of(1.0 / 2304.0)));
+        let series = F::of(1.0 / 12.0) + w * (F::of(1.0 / 80.0) + w * (F::of(1.0 / 448.0) + w * F::of(1.0 / 2304.0)));
         (mean, self.compressible * (x + x * (w * series)))
     }
 
@@ -137,15 +135,7 @@ impl<F: Real> Prepared<F> {
         }
         let x = root(q);
         let signed = if drop < F::of(0.0) { -x } else { x };
-        Solution {
-            x: signed,
-            mean_pressure: mean,
-            viscosity: mu,
-            slip,
-            log_ratio: l,
-            q,
-            kinetic_share: b * q * x,
-        }
+        Solution { x: signed, mean_pressure: mean, viscosity: mu, slip, log_ratio: l, q, kinetic_share: b * q * x }
     }
 
     /// Inverse: the pressure drop (Pa, signed) that drives a mass flow (kg/s, signed); absent when no outlet pressure
@@ -167,7 +157,7 @@ impl<F: Real> Prepared<F> {
             let head = self.a / (one + slip) * x * (one + self.b_over_a * (one + slip) * self.q(x, l) * x);
             let need = head * mu / rho * mu; // dP were density that of the mean pressure
             let inside = p1 * p1 - sign * self.compressible * two * need * mean;
-            if !(inside > zero) {
+            if inside <= zero || !inside.finite() {
                 return None;
             }
             drop = if self.fluid.gas { two * need * mean / (p1 + inside.root()) } else { need };

@@ -3,37 +3,37 @@
 //! Each file below is generated (DEVELOPERS.md, "Adding a fluid"); each entry names its sources, its range, how far the
 //! stored table lies from its formulation, and what its viscosity is worth.
 
-use super::stored::CatalogueEntry;
+pub use super::stored::CatalogueEntry;
 
-mod nitrogen;
 mod air;
 mod argon;
-mod helium;
-mod oxygen;
-mod hydrogen;
 mod carbon_dioxide;
+mod helium;
+mod hydrogen;
+mod krypton;
 mod methane;
+mod neon;
+mod nitrogen;
+mod oxygen;
 mod propane;
 mod sulfur_hexafluoride;
-mod neon;
-mod krypton;
-mod xenon;
 mod water;
+mod xenon;
 
-pub use nitrogen::NITROGEN;
 pub use air::AIR;
 pub use argon::ARGON;
-pub use helium::HELIUM;
-pub use oxygen::OXYGEN;
-pub use hydrogen::HYDROGEN;
 pub use carbon_dioxide::CARBON_DIOXIDE;
+pub use helium::HELIUM;
+pub use hydrogen::HYDROGEN;
+pub use krypton::KRYPTON;
 pub use methane::METHANE;
+pub use neon::NEON;
+pub use nitrogen::NITROGEN;
+pub use oxygen::OXYGEN;
 pub use propane::PROPANE;
 pub use sulfur_hexafluoride::SULFUR_HEXAFLUORIDE;
-pub use neon::NEON;
-pub use krypton::KRYPTON;
-pub use xenon::XENON;
 pub use water::WATER;
+pub use xenon::XENON;
 
 /// Every fluid of the catalogue.
 pub static ALL: [&CatalogueEntry; 14] = [

@@ -129,10 +129,7 @@ impl StoredFluid {
             Some(humidity) => moisture(self, humidity.as_fraction(), t, p)?.moisten(dry),
             None => dry,
         };
-        Ok((
-            Viscosity::from_pascal_seconds(at.viscosity(p)),
-            Density::from_kilograms_per_cubic_metre(at.density(p)),
-        ))
+        Ok((Viscosity::from_pascal_seconds(at.viscosity(p)), Density::from_kilograms_per_cubic_metre(at.density(p))))
     }
 }
 

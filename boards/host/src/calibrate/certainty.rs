@@ -29,10 +29,7 @@ fn flow_at(meter: &Meter<'_>, [t, p]: [f64; 2], drop: f64) -> Option<Flow> {
 pub fn coverage(flow: &Flow, dof: f64) -> f64 {
     let u = &flow.uncertainty;
     let rest = f64::from(u.common).hypot(f64::from(u.sensors));
-    let parts = [
-        Component { uncertainty: f64::from(u.fit), dof },
-        Component { uncertainty: rest, dof: f64::INFINITY },
-    ];
+    let parts = [Component { uncertainty: f64::from(u.fit), dof }, Component { uncertainty: rest, dof: f64::INFINITY }];
     effective_dof(&parts).and_then(coverage_factor).unwrap_or(2.0)
 }
 

@@ -181,8 +181,7 @@ fn outlier_that_heals(run: &Run<'_>) -> Result<Option<Finding>> {
     if run.samples.len() < 5 {
         return Ok(None);
     }
-    let rest: Vec<Sample> =
-        run.samples.iter().enumerate().filter(|&(j, _)| j != i).map(|(_, s)| s.clone()).collect();
+    let rest: Vec<Sample> = run.samples.iter().enumerate().filter(|&(j, _)| j != i).map(|(_, s)| s.clone()).collect();
     let healed = fit(&rest, run.u_viscosity, run.solution.prior)?;
     let heals = healed.basis == Basis::Residuals || healed.p_value() >= REFUSING_PROBABILITY;
     Ok(heals.then(|| standing_out(run, i, z)))

@@ -143,10 +143,9 @@ fn common_effects(samples: &[Sample], cause: Cause, u_viscosity: f64, a: f64, b:
     };
     let effect = |sample: &Sample| match cause {
         Cause::Viscosity => u_viscosity * sample.viscosity_slope(a),
-        Cause::ReferenceFlow => of_sources(
-            sample,
-            &[Source::ReferenceFlow, Source::ReferenceTemperature, Source::ReferencePressure],
-        ),
+        Cause::ReferenceFlow => {
+            of_sources(sample, &[Source::ReferenceFlow, Source::ReferenceTemperature, Source::ReferencePressure])
+        }
         Cause::Density => of_sources(sample, &[Source::LinePressure]),
         Cause::Temperature => of_sources(sample, &[Source::Temperature]),
         Cause::PressureDrop | Cause::PressureDropZero => of_sources(sample, &[Source::PressureDrop]),

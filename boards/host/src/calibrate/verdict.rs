@@ -227,8 +227,7 @@ fn outcome(
     let per_x = run.reynolds_per_x;
     let largest_drop = run.samples.iter().map(|s| s.pressure_drop.abs()).fold(0.0, f64::max);
     let (year, month, day) = order.date;
-    let state =
-        [mean(run.samples, points, |p| p.temperature), mean(run.samples, points, |p| p.line_pressure)];
+    let state = [mean(run.samples, points, |p| p.temperature), mean(run.samples, points, |p| p.line_pressure)];
     let dof = solution.type_a_degrees_of_freedom();
     Calibration {
         serial: order.serial.into(),

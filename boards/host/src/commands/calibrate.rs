@@ -101,9 +101,9 @@ fn order<'a>(
         (Some(asked), Some(said)) if asked != said => {
             return Err(Problem::new(&points.file, format!("the points are on {said}, --fluid says {asked}")));
         }
-        (asked, said) => asked.or(said).ok_or_else(|| {
-            Problem::new(&points.file, "no fluid: add a column fluid, or name it with --fluid")
-        })?,
+        (asked, said) => asked
+            .or(said)
+            .ok_or_else(|| Problem::new(&points.file, "no fluid: add a column fluid, or name it with --fluid"))?,
     };
     let fluid = fluids.find(name).map_err(|message| Problem::new(&points.file, message))?;
     let date = arguments.date.unwrap_or_else(|| jiff::Timestamp::now().to_zoned(jiff::tz::TimeZone::UTC).date());

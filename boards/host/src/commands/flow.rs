@@ -249,9 +249,8 @@ impl Results {
 
     fn push_flow(&mut self, flow: &Flow) {
         let unit = self.flow_unit;
-        let volume = |flow: evenbore::quantity::VolumeFlow| {
-            unit.from_si(f64::from(flow.as_cubic_metres_per_second())) as f32
-        };
+        let volume =
+            |flow: evenbore::quantity::VolumeFlow| unit.from_si(f64::from(flow.as_cubic_metres_per_second())) as f32;
         let mass = self.mass_unit.from_si(f64::from(flow.mass.as_kilograms_per_second())) as f32;
         self.push(Some(volume(flow.volume)));
         self.push(Some(mass));

@@ -28,10 +28,7 @@ pub fn nominal(file: &ElementFile) -> Result<Element, Error> {
             }
         }
     };
-    element.with_expansion(
-        file.expansion_per_k as f32,
-        Temperature::from_celsius(file.reference_temperature_c as f32),
-    )
+    element.with_expansion(file.expansion_per_k as f32, Temperature::from_celsius(file.reference_temperature_c as f32))
 }
 
 /// Whether the file says enough for a nominal A and B.
