@@ -16,7 +16,8 @@ import os
 import pathlib
 import sys
 
-os.environ.setdefault("OMP_NUM_THREADS", "1")  # before numpy: the order of its sums must not depend on the machine's cores
+# Before numpy is loaded: the order of its sums must not depend on the machine's cores.
+os.environ.setdefault("OMP_NUM_THREADS", "1")
 os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
 
 import catalogue

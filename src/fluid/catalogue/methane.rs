@@ -68,5 +68,5 @@ pub static METHANE: CatalogueEntry = CatalogueEntry {
     scale_basis: "Berg & Moldover 2012, from memory",
     residual_viscosity_ppm: 6.13,
     residual_density_ppm: 0.75,
-    uncertainty_basis: "viscosity: scaled at 298.15 K to a recommended value of 0.08-0.1 % standard uncertainty; ratio: judgement, the formulation states about 2 % and its shape was not compared with a better one, and it is 1.1 % high at 298.15 K; the viscosity carries the ratio's uncertainty",
+    uncertainty_basis: "viscosity: scaled at 298.15 K to a recommended value of 0.08-0.1 % standard uncertainty; ratio: judgement, the formulation states about 2 % and its shape was not compared with a better one, and it is 1.1 % above the value from memory; the viscosity carries the ratio's uncertainty",
 };

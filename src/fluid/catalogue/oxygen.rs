@@ -67,5 +67,5 @@ pub static OXYGEN: CatalogueEntry = CatalogueEntry {
     scale_basis: "not scaled",
     residual_viscosity_ppm: 1.33,
     residual_density_ppm: 0.32,
-    uncertainty_basis: "viscosity: judgement; the source states generally within 5 %, its dilute gas is about ten times better (from memory) and its nitrogen and argon are 0.24 % and 0.18 % high; ratio: judgement",
+    uncertainty_basis: "viscosity: judgement; the source states generally within 5 %, its dilute gas is about ten times better (from memory) and its nitrogen and argon are 0.24 % and 0.18 % high (argon's against a value from memory); ratio: judgement",
 };
