@@ -17,7 +17,7 @@ use crate::quantity::{
 use crate::reading::{Reading, SensorUncertainty, Trims};
 use crate::reference::ReferenceConditions;
 use crate::status::{Refusal, Status};
-use crate::uncertainty::{Sensitivities, Uncertainty, common_part, fit_part, sensitivities, sensor_part};
+use crate::uncertainty::{Sensitivities, Uncertainty, combine, common_part, fit_part, sensitivities, sensor_part};
 
 /// Reynolds number up to which the law is held to be laminar.
 pub const LAMINAR_LIMIT: f32 = 1800.0;
@@ -168,7 +168,9 @@ impl<'a> Meter<'a> {
         let solution = conditions.solve(reading.pressure_drop)?;
         let sample = conditions.interpret(&solution);
         let sensitivities = conditions.sensitivities(&solution, &reading);
-        let uncertainty = self.uncertainty(&sensitivities, sensors, &reading);
+        let u_water = conditions.state.moisture.u_viscosity;
+        let u_viscosity = combine(self.u_viscosity(reading.temperature), u_water);
+        let uncertainty = self.uncertainty(&sensitivities, sensors, &reading, u_viscosity);
         Ok(Flow { sample, sensitivities, uncertainty })
     }
 
@@ -201,11 +203,17 @@ impl<'a> Meter<'a> {
         if outside(self.fluid, t, p).is_empty() { PropertiesAt::new(self.fluid, t).density(p) } else { 0.0 }
     }
 
-    fn uncertainty(&self, s: &Sensitivities, sensors: &SensorUncertainty, reading: &Reading) -> Uncertainty {
+    fn uncertainty(
+        &self,
+        s: &Sensitivities,
+        sensors: &SensorUncertainty,
+        reading: &Reading,
+        u_viscosity: f32,
+    ) -> Uncertainty {
         let (drop, p) = (reading.pressure_drop.as_pascals(), reading.line_pressure.as_pascals());
         Uncertainty {
             fit: fit_part(s, &self.quality),
-            common: common_part(s, &self.quality, self.u_viscosity(reading.temperature), self.calibrated_on_this_fluid),
+            common: common_part(s, &self.quality, u_viscosity, self.calibrated_on_this_fluid),
             sensors: sensor_part(s, sensors, drop, p),
         }
     }

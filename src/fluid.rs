@@ -15,5 +15,7 @@ pub mod builder; // a table from any smooth formulation
 
 pub mod mineral_oil; // ASTM D341 through two kinematic viscosities
 
+pub mod water_glycol; // published polynomials in concentration and temperature
+
 pub use stored::CatalogueEntry;
 pub use stored::{Phase, StoredFluid};

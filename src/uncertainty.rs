@@ -90,7 +90,12 @@ pub(crate) fn sensitivities(state: &State<f32>, at: &Solution<f32>, drop: f32, h
 fn relative_drop(sensors: &SensorUncertainty, drop: f32) -> f32 {
     let floor = drop.magnitude().at_least(1e-3 * sensors.pressure_drop_pa).at_least(f32::MIN_POSITIVE);
     let absolute = sensors.pressure_drop_pa / floor;
-    (absolute * absolute + sensors.pressure_drop_rel * sensors.pressure_drop_rel).quick_root()
+    combine(absolute, sensors.pressure_drop_rel)
+}
+
+/// Root of the sum of two squares, to the accuracy of an uncertainty.
+pub(crate) fn combine(u: f32, v: f32) -> f32 {
+    (u * u + v * v).quick_root()
 }
 
 /// Part of the sensors.
@@ -124,6 +129,5 @@ pub(crate) fn common_part(s: &Sensitivities, quality: &Quality, u_viscosity: f32
         .map(|part| of_part(part.effect_a, part.effect_b_m))
         .map(|u| u * u)
         .sum();
-    let fluid = u_viscosity * s.viscosity;
-    (variance + fluid * fluid).quick_root()
+    combine(variance.quick_root(), u_viscosity * s.viscosity)
 }

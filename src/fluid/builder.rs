@@ -1,6 +1,6 @@
 //! A stored table from any smooth formulation: nodes and slopes sampled in double precision, once.
 
-use super::stored::{Curve, FINE_NODES, Name, Phase, StoredFluid};
+use super::stored::{Curve, FINE_NODES, LIQUID_SCALE, Name, Phase, StoredFluid};
 use crate::error::{Error, within};
 use crate::math::ln;
 use crate::quantity::{AbsolutePressure, Temperature};
@@ -59,7 +59,7 @@ pub fn liquid(
     check_frame(frame)?;
     let thinner = 1.0 + f64::from(frame.viscosity_per_pascal) * p;
     let lighter = 1.0 + f64::from(frame.density_per_pascal) * p;
-    let viscosity = sample::<FINE_NODES>(ranges, |t| ln(viscosity(t) / thinner));
+    let viscosity = sample::<FINE_NODES>(ranges, |t| ln(viscosity(t) / (thinner * LIQUID_SCALE)));
     let extra = sample(ranges, |t| density(t) / lighter);
     let zero = Curve::constant(0.0);
     let fluid = StoredFluid {

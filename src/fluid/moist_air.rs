@@ -1,8 +1,11 @@
 //! Water vapour in air: how it lowers viscosity and density.
 //!
 //! `x_w = RH f p_sv/p`, with p_sv and the enhancement factor f of CIPM-2007 (Picard, Davis, Glaser & Fujii,
-//! Metrologia 45 (2008) 149); density scales with the molar mass `1 - x_w (1 - Mw/Ma)`; viscosity with
-//! `1 - x_w (m0 + m1 t) - m2 x_w^2`, fitted to Wilke's mixture rule over 0..60 C.
+//! Metrologia 45 (2008) 149). Density scales with the molar mass `1 - x_w (1 - Mw/Ma)` and
+//! `Z = Z_dry + p/T (e1 x_w + (e2 + e3 (T - 293.15)) x_w^2)`, fitted to the real-gas humid air of ASHRAE RP-1485:
+//! within 25 ppm of it from 0 to 60 C and of CIPM-2007 from 15 to 27 C. Viscosity scales with
+//! `1 - x_w (m0 + m1 (T - 293.15))`, within 0.1 % of the same source to 40 C and 0.25 % to 60 C; sources disagree on
+//! m0 (0.10 to 0.51, from memory), so its uncertainty is 0.12 x_w.
 
 use super::properties::{PropertiesAt, outside};
 use super::stored::StoredFluid;
@@ -37,6 +40,10 @@ pub(crate) struct Moisture<F> {
     pub viscosity_slope: F,
     /// dln rho/dx_w.
     pub density_slope: F,
+    /// What is added to the pressure coefficient of Z, 1/Pa.
+    pub compressibility: F,
+    /// Relative standard uncertainty of viscosity from the water.
+    pub u_viscosity: F,
 }
 
 impl<F: Real> Moisture<F> {
@@ -50,6 +57,8 @@ impl<F: Real> Moisture<F> {
             dry_share: one,
             viscosity_slope: zero,
             density_slope: zero,
+            compressibility: zero,
+            u_viscosity: zero,
         }
     }
 
@@ -58,25 +67,34 @@ impl<F: Real> Moisture<F> {
     pub fn new(humidity: F, temperature: F, pressure: F, molar_mass: F) -> Self {
         let one = F::of(1.0);
         let celsius = temperature - F::of(273.15);
+        let warmer = temperature - F::of(293.15);
         let water = humidity * saturation_pressure(temperature) * enhancement(celsius, pressure) / pressure;
         let lighter = one - F::of(WATER_MOLAR_MASS) / molar_mass;
         let mass_factor = one - water * lighter;
-        let m0 = F::of(VISCOSITY_TERMS[0]) + F::of(VISCOSITY_TERMS[1]) * celsius;
-        let m2 = F::of(VISCOSITY_TERMS[2]);
-        let viscosity_factor = one - water * (m0 + m2 * water);
+        let m = F::of(VISCOSITY_TERMS[0]) + F::of(VISCOSITY_TERMS[1]) * warmer;
+        let viscosity_factor = one - water * m;
+        let [e1, e2, e3] = COMPRESSIBILITY_TERMS.map(F::of);
         Self {
             water,
             viscosity_factor,
             mass_factor,
             dry_share: (one - water) / mass_factor,
-            viscosity_slope: -(m0 + F::of(2.0) * m2 * water) / viscosity_factor,
+            viscosity_slope: -m / viscosity_factor,
             density_slope: -lighter / mass_factor,
+            compressibility: water * (e1 + water * (e2 + e3 * warmer)) / temperature,
+            u_viscosity: F::of(U_VISCOSITY) * water,
         }
     }
 
     /// Properties of the moist air whose dry properties are given.
     pub fn moisten(&self, dry: PropertiesAt<F>) -> PropertiesAt<F> {
-        PropertiesAt { mu0: dry.mu0 * self.viscosity_factor, base: dry.base * self.mass_factor, ..dry }
+        let [b, c, d] = dry.z;
+        PropertiesAt {
+            mu0: dry.mu0 * self.viscosity_factor,
+            base: dry.base * self.mass_factor,
+            z: [b + self.compressibility, c, d],
+            ..dry
+        }
     }
 }
 
@@ -133,8 +151,12 @@ impl StoredFluid {
     }
 }
 
-/// m0, m1 (1/K), m2 of the viscosity of moist air; residual against Wilke's rule 0.03 % over 0..60 C, all humidities.
-const VISCOSITY_TERMS: [f64; 3] = [0.30, 0.0, 0.0];
+/// m0, m1 (1/K) of the viscosity of moist air.
+const VISCOSITY_TERMS: [f64; 2] = [0.304_709_4, 0.002_095_645];
+/// Standard uncertainty of m0.
+const U_VISCOSITY: f64 = 0.12;
+/// e1, e2 (K/Pa), e3 (1/Pa) of the compressibility of moist air.
+const COMPRESSIBILITY_TERMS: [f64; 3] = [-4.981_153e-6, -1.398_023e-4, 1.454_626e-6];
 
 /// Saturation pressure over water, Pa: CIPM-2007, equation A1.1.
 fn saturation_pressure<F: Real>(t: F) -> F {

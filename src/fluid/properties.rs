@@ -1,6 +1,6 @@
 //! A stored table evaluated at one temperature: what remains is cheap arithmetic in pressure.
 
-use super::stored::{Phase, StoredFluid};
+use super::stored::{LIQUID_SCALE, Phase, StoredFluid};
 use crate::math::Real;
 use crate::quantity::{AbsolutePressure, Density, Temperature, Viscosity};
 use crate::status::Refusal;
@@ -45,7 +45,7 @@ impl<F: Real> PropertiesAt<F> {
             let specific = F::stored(fluid.molar_mass) / F::of(MOLAR_GAS_CONSTANT);
             (mu, mu_slope / mu, specific / temperature, extra, -F::of(1.0) / temperature)
         } else {
-            (mu.exponential(), mu_slope, extra, F::of(0.0), extra_slope * coarse / (extra * span))
+            (F::of(LIQUID_SCALE) * mu.exponential(), mu_slope, extra, F::of(0.0), extra_slope * coarse / (extra * span))
         };
         Self {
             mu0,

@@ -5,10 +5,10 @@
 //! | phase | viscosity | density |
 //! |---|---|---|
 //! | gas | `mu = mu0(T) (1 + k1 p + k2 p^2)` | `rho = p M / (R T Z)`, `Z = 1 + b p + c p^2 + d p^3` |
-//! | liquid | `mu = exp(lnmu0(T)) (1 + k1 p + k2 p^2)` | `rho = rho0(T) (1 + b p + c p^2 + d p^3)` |
+//! | liquid | `mu = 10 mPa s exp(lnmu0(T)) (1 + k1 p + k2 p^2)` | `rho = rho0(T) (1 + b p + c p^2 + d p^3)` |
 //!
 //! Liquids store the logarithm because their viscosity spans decades; gases do not, since the rounding of a
-//! logarithm costs them 1 ppm.
+//! logarithm costs them 1 ppm. The logarithm is that of viscosity over 10 mPa s, which keeps it and its rounding small.
 
 use crate::error::{Error, within};
 use crate::math::Real;
@@ -19,6 +19,9 @@ pub const FINE_NODES: usize = 33;
 
 /// Nodes of every other curve: 8 segments.
 pub const COARSE_NODES: usize = 9;
+
+/// Viscosity whose logarithm a liquid's table counts from, Pa s.
+pub(crate) const LIQUID_SCALE: f64 = 0.01;
 
 /// Longest fluid name, in bytes.
 pub const NAME_LENGTH: usize = 24;
@@ -202,7 +205,7 @@ impl StoredFluid {
     fn check_curves(&self) -> Result<(), Error> {
         let (least, most) = match self.phase {
             Phase::Gas => (1e-7, 1e-2),
-            Phase::Liquid => (-14.0, 10.0),
+            Phase::Liquid => (-10.0, 14.0),
         };
         for [value, slope] in self.viscosity.nodes {
             within("stored viscosity", value, least, most)?;

@@ -7,6 +7,8 @@ least-squares solution instead of sampling the formulation at the nodes; kinks i
 import numpy as np
 
 FINE, COARSE = 33, 9
+# Viscosity, Pa s, that the logarithm of a liquid counts from; the library calls it by the same name.
+LIQUID_SCALE = 0.01
 ROUNDS = 6
 
 

@@ -27,7 +27,7 @@ class Table:
         box = self.fluid.box
         viscosity = fit.hermite(fit.FINE, box, temperature) @ self.viscosity
         if self.fluid.phase == "liquid":
-            viscosity = np.exp(viscosity)
+            viscosity = fit.LIQUID_SCALE * np.exp(viscosity)
         viscosity = viscosity * fit.polynomial(self.viscosity_pressure, box, temperature, pressure)
         factor = fit.polynomial(self.density_pressure, box, temperature, pressure)
         if self.fluid.phase == "liquid":
@@ -101,9 +101,9 @@ def _fit_liquid(table):
     shape, top = (len(temperatures), len(pressures)), fluid.pascals[1]
     vander = np.vander(pressures / top, 3, increasing=True)
     zero = lambda values: np.linalg.lstsq(vander, values.reshape(shape).T, rcond=None)[0][0]
-    table.viscosity = fit.curve(fit.FINE, box, temperatures, np.log(zero(viscosity)), relative=False)
+    table.viscosity = fit.curve(fit.FINE, box, temperatures, np.log(zero(viscosity) / fit.LIQUID_SCALE), relative=False)
     table.extra = fit.curve(fit.COARSE, box, temperatures, zero(density))
-    base = np.exp(fit.hermite(fit.FINE, box, t) @ table.viscosity)
+    base = fit.LIQUID_SCALE * np.exp(fit.hermite(fit.FINE, box, t) @ table.viscosity)
     table.viscosity_pressure = fit.pressure_curves(2, box, t, p, viscosity / base - 1.0, base / viscosity)
     base = fit.hermite(fit.COARSE, box, t) @ table.extra
     table.density_pressure = fit.pressure_curves(3, box, t, p, density / base - 1.0, base / density)

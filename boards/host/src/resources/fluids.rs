@@ -4,6 +4,7 @@ use crate::input::fluids_file::{self, DeclaredFluid, NamedFluid};
 use crate::input::problem::{Problem, shown};
 use evenbore::fluid::builder::{Frame, Row, interpolate, liquid};
 use evenbore::fluid::mineral_oil::{OilData, mineral_oil};
+use evenbore::fluid::water_glycol::{Glycol, U_VISCOSITY, water_glycol};
 use evenbore::fluid::{StoredFluid, catalogue};
 use evenbore::quantity::{AbsolutePressure, Density, KinematicViscosity, Temperature};
 use std::path::Path;
@@ -75,7 +76,14 @@ fn stored(declared: &NamedFluid) -> Result<StoredFluid, evenbore::error::Error> 
                 u_viscosity,
             })
         }
-        DeclaredFluid::WaterGlycol { .. } => todo!(),
+        DeclaredFluid::WaterGlycol { glycol, mass_fraction } => {
+            let glycol = match glycol {
+                fluids_file::Glycol::Ethylene => Glycol::Ethylene,
+                fluids_file::Glycol::Propylene => Glycol::Propylene,
+            };
+            let u = declared.u_viscosity_rel.map_or(U_VISCOSITY, |u| u as f32);
+            water_glycol(&declared.name, glycol, *mass_fraction as f32, u)
+        }
         DeclaredFluid::Table { rows, .. } => {
             let rows: Vec<Row> = rows
                 .iter()
