@@ -18,7 +18,7 @@ use crate::status::Status;
 use heapless::{String, Vec};
 
 /// Bytes of an encoded record.
-pub const RECORD_LENGTH: usize = 1048;
+pub const RECORD_LENGTH: usize = 1044;
 /// Longest serial number.
 pub const SERIAL_LENGTH: usize = 16;
 /// Longest reason for using a refused run.
