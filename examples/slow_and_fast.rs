@@ -28,6 +28,10 @@ fn main() -> Result<(), Box<dyn std::error::Error>> {
 
     // The inverse: which pressure drop does a wanted flow need?
     let wanted = conditions.sample(PressureDrop::from_pascals(1000.0))?.mass;
-    println!("{:.4} g/min needs {:.2} Pa", wanted.as_grams_per_minute(), conditions.pressure_drop(wanted)?.as_pascals());
+    println!(
+        "{:.4} g/min needs {:.2} Pa",
+        wanted.as_grams_per_minute(),
+        conditions.pressure_drop(wanted)?.as_pascals()
+    );
     Ok(())
 }

@@ -16,17 +16,10 @@ use crate::quantity::{
 };
 use crate::reading::{Reading, SensorUncertainty, Trims};
 use crate::reference::ReferenceConditions;
+use crate::regime::judge;
 use crate::status::{Refusal, Status};
 use crate::uncertainty::{Sensitivities, Uncertainty, combine, common_part, fit_part, sensitivities, sensor_part};
 
-/// Reynolds number up to which the law is held to be laminar.
-pub const LAMINAR_LIMIT: f32 = 1800.0;
-/// Slip above which the neglected second order shows.
-const SLIP_LIMIT: f32 = 0.06;
-/// ln(p1/p2) above which the expansion term is past its checked range.
-const EXPANSION_LIMIT: f32 = 0.7;
-/// How far beyond the largest calibrated x a flow may go unflagged.
-const RANGE_MARGIN: f32 = 1.2;
 /// Kelvin over which a viscosity ratio's uncertainty grows from nothing to its stated value.
 const RATIO_SPAN: f32 = 50.0;
 
@@ -187,12 +180,11 @@ impl<'a> Meter<'a> {
         let (t, p) = (temperature.as_kelvin(), line_pressure.as_pascals());
         let humidity = humidity.map(RelativeHumidity::as_fraction);
         let state = State::new(&self.element, self.fluid, t, p, humidity)?;
-        let range = self.quality.x_max_m * RANGE_MARGIN;
         Ok(Conditions {
             state,
             element: self.element,
             standard_density: self.standard_density(),
-            x_limit: if range > 0.0 { range } else { f32::INFINITY },
+            x_calibrated: self.quality.x_max_m,
             standing: self.standing,
         })
     }
@@ -236,7 +228,7 @@ pub struct Conditions {
     state: State<f32>,
     element: Element,
     standard_density: f32,
-    x_limit: f32,
+    x_calibrated: f32,
     standing: Status,
 }
 
@@ -273,21 +265,15 @@ impl Conditions {
         let mass = at.x * at.viscosity;
         let dry = mass * self.state.moisture.dry_share;
         let standard = if self.standard_density > 0.0 { Some(dry / self.standard_density) } else { None };
-        let reynolds = self.element.reynolds(at.x);
-        let mut status = self.standing;
-        status.set(Status::NOT_LAMINAR, reynolds > LAMINAR_LIMIT);
-        status.set(Status::BEYOND_CALIBRATION, at.x.abs() > self.x_limit);
-        status.set(Status::STRONG_EXPANSION, at.log_ratio > EXPANSION_LIMIT);
-        status.set(Status::STRONG_SLIP, at.slip > SLIP_LIMIT);
         Sample {
             volume: VolumeFlow::from_cubic_metres_per_second(mass / self.state.line_density),
             mass: MassFlow::from_kilograms_per_second(mass),
             standard: standard.map(VolumeFlow::from_cubic_metres_per_second),
             viscosity: Viscosity::from_pascal_seconds(at.viscosity),
             density: Density::from_kilograms_per_cubic_metre(self.state.line_density),
-            reynolds,
+            reynolds: self.element.reynolds(at.x),
             kinetic_share: at.kinetic_share,
-            status,
+            status: self.standing | judge(&self.element, self.x_calibrated, at),
         }
     }
 

@@ -23,6 +23,8 @@ pub mod calibration; // how well the element is known
 
 mod conditions; // the slow half: per change of temperature and line pressure
 
+pub mod regime; // where the law holds
+
 pub mod uncertainty; // what the flow is uncertain by
 
 pub mod flow; // the walk

@@ -92,7 +92,7 @@ fn lack(run: &Run<'_>) -> Result<Vec<Finding>> {
 
 /// Points above the laminar limit, by Reynolds number.
 fn beyond_laminar(run: &Run<'_>) -> Option<Vec<u64>> {
-    let limit = f64::from(evenbore::flow::LAMINAR_LIMIT);
+    let limit = f64::from(evenbore::regime::LAMINAR_LIMIT);
     let beyond = run.samples.iter().filter(|s| s.columns.x * run.reynolds_per_x > limit);
     let lines: Vec<u64> = beyond.map(|s| s.line).collect();
     (!lines.is_empty()).then_some(lines)
