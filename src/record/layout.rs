@@ -285,7 +285,7 @@ impl Reader<'_> {
             u_viscosity: self.number()?,
             u_viscosity_ratio: self.number()?,
             viscosity: self.curve::<FINE_NODES>()?,
-            viscosity_pressure: [self.curve::<COARSE_NODES>()?, self.curve()?],
+            viscosity_pressure: [self.curve()?, self.curve()?],
             density_pressure: [self.curve()?, self.curve()?, self.curve()?],
             extra: self.curve()?,
         })
