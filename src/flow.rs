@@ -11,12 +11,13 @@ use crate::element::law::Solution;
 use crate::error::Error;
 use crate::fluid::StoredFluid;
 use crate::fluid::properties::{PropertiesAt, outside};
+use crate::math::Real;
 use crate::quantity::{
     AbsolutePressure, Density, MassFlow, PressureDrop, RelativeHumidity, Temperature, Viscosity, VolumeFlow,
 };
 use crate::reading::{Reading, SensorUncertainty, Trims};
 use crate::reference::ReferenceConditions;
-use crate::regime::judge;
+use crate::regime::{LAMINAR_LIMIT, LARGEST_EXPANSION, RANGE_MARGIN, SLIP_LIMIT, judge};
 use crate::status::{Refusal, Status};
 use crate::uncertainty::{Sensitivities, Uncertainty, combine, common_part, fit_part, sensitivities, sensor_part};
 
@@ -255,6 +256,23 @@ impl Conditions {
         Ok(PressureDrop::from_pascals(drop))
     }
 
+    /// Flows and pressure drops from which each flag is raised, for arithmetic that does not know x.
+    pub(crate) fn limits(&self) -> Limits {
+        let law = &self.state.law;
+        let p1 = law.line_pressure;
+        let mu = law.fluid.viscosity(p1);
+        let volume = |x: f32| if x > 0.0 { x * mu / self.state.line_density } else { f32::INFINITY };
+        let per_x = self.element.reynolds(1.0);
+        let gas = law.compressible > 0.0;
+        Limits {
+            laminar: volume(if per_x > 0.0 { LAMINAR_LIMIT / per_x } else { 0.0 }),
+            range: volume(RANGE_MARGIN * self.x_calibrated),
+            expansion: if gas { p1 * LARGEST_EXPANSION } else { f32::INFINITY },
+            slip: if gas { (2.0 * (p1 - law.slip * mu / SLIP_LIMIT)).at_least(0.0) } else { f32::INFINITY },
+            standing: self.standing,
+        }
+    }
+
     fn solve(&self, pressure_drop: PressureDrop) -> Result<Solution<f32>, Refusal> {
         let drop = pressure_drop.as_pascals();
         self.state.check(drop)?;
@@ -281,6 +299,20 @@ impl Conditions {
         let humidity = reading.relative_humidity.map_or(0.0, RelativeHumidity::as_fraction);
         sensitivities(&self.state, at, reading.pressure_drop.as_pascals(), humidity)
     }
+}
+
+/// See [`Conditions::limits`].
+pub(crate) struct Limits {
+    /// Volume flow at the laminar limit, m3/s.
+    pub laminar: f32,
+    /// Volume flow at the end of the calibrated range, m3/s.
+    pub range: f32,
+    /// Pressure drop at the expansion limit, Pa.
+    pub expansion: f32,
+    /// Pressure drop at the slip limit, Pa.
+    pub slip: f32,
+    /// Flags of every flow.
+    pub standing: Status,
 }
 
 /// A flow and its status; [`Flow`] adds the uncertainty.

@@ -29,6 +29,8 @@ pub mod uncertainty; // what the flow is uncertain by
 
 pub mod flow; // the walk
 
+pub mod flow_curve; // the fast arithmetic: integers inside
+
 pub mod record; // the calibration as bytes
 
 pub mod double; // the same kernels in double precision, for the bench

@@ -17,6 +17,9 @@ pub const RANGE_MARGIN: f32 = 1.2;
 /// ln(p1/p2) above which the expansion term is past its checked range.
 pub const EXPANSION_LIMIT: f32 = 0.7;
 
+/// The pressure drop over line pressure at that limit: 1 - exp(-0.7).
+pub(crate) const LARGEST_EXPANSION: f32 = 0.503_414_7;
+
 /// Slip s above which the neglected second order shows (Knudsen number xi/R of 0.015 in tubes).
 pub const SLIP_LIMIT: f32 = 0.06;
 
