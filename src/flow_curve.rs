@@ -20,7 +20,8 @@ const OCTAVES: usize = 5;
 const TERMS: usize = 7;
 
 /// Chebyshev nodes on -1/2..1/2: `cos((2 i + 1) pi/14)/2`.
-const NODES: [f32; TERMS] = [0.487463956, 0.390915741, 0.216941870, 0.0, -0.216941870, -0.390915741, -0.487463956];
+const NODES: [f32; TERMS] =
+    [0.487_463_95, 0.390_915_75, 0.216_941_87, 0.0, -0.216_941_87, -0.390_915_75, -0.487_463_95];
 
 /// 1 as a coefficient: 30 bits of fraction.
 const ONE: f32 = (1 << 30) as f32;
