@@ -1,7 +1,7 @@
 //! What a calibration says of an element beyond A and B: how sure they are, how far they reach.
 //!
 //! Uncertainties are kept relative to A, so that no square of A (up to 1e20 1/m3 for one fine capillary) can
-//! overflow single precision: `u_A/A` without unit and `u_B/A` in metres, since `B x/A` is the kinetic share.
+//! overflow single precision: `u_A/A` without unit and `u_B/A` per metre, since `B x/A` is the kinetic share and x is a length.
 
 use crate::error::{Error, within};
 use crate::quantity::Temperature;
@@ -65,7 +65,7 @@ pub struct CommonPart {
     pub cause: Cause,
     /// Change of A over A.
     pub effect_a: f32,
-    /// Change of B over A, m.
+    /// Change of B over A, 1/m.
     pub effect_b_m: f32,
 }
 
@@ -76,7 +76,7 @@ pub struct CommonPart {
 pub struct Quality {
     /// Standard uncertainty of A from the fit, over A.
     pub u_a: f32,
-    /// Standard uncertainty of B from the fit, over A, m.
+    /// Standard uncertainty of B from the fit, over A, 1/m.
     pub u_b_m: f32,
     /// Correlation of A and B in the fit.
     pub correlation: f32,
@@ -123,7 +123,7 @@ impl Quality {
     /// Names the field that is not finite or outside its limits.
     pub fn check(&self) -> Result<(), Error> {
         within("u of a (rel)", self.u_a, 0.0, 10.0)?;
-        within("u of b over a (m)", self.u_b_m, 0.0, 1e6)?;
+        within("u of b over a (1/m)", self.u_b_m, 0.0, 1e6)?;
         within("correlation", self.correlation, -1.0, 1.0)?;
         within("degrees of freedom", self.degrees_of_freedom, 0.0, 1e9)?;
         within("largest x (m)", self.x_max_m, 0.0, 1e9)?;
@@ -131,7 +131,7 @@ impl Quality {
         within("calibration temperature (K)", self.temperature_k.as_kelvin(), 100.0, 1000.0)?;
         for part in &self.common {
             within("common effect on a (rel)", part.effect_a, -10.0, 10.0)?;
-            within("common effect on b over a (m)", part.effect_b_m, -1e6, 1e6)?;
+            within("common effect on b over a (1/m)", part.effect_b_m, -1e6, 1e6)?;
         }
         Ok(())
     }

@@ -131,7 +131,7 @@ impl Element {
     /// `A = 8 L/(N pi R^4)` (Poiseuille, 1840), `B = K1/(N pi R^2)^2`.
     ///
     /// # Errors
-    /// Names the size outside 1 um..50 mm (bore), 0.1 mm..10 m (length) or 1..1e6 (count).
+    /// Names the size outside 1 um..50 mm (bore), 0.1 mm..10 m (length) or 1..1e6 (count), or an A below 1 1/m3.
     ///
     /// ```
     /// use evenbore::element::Element;
@@ -144,7 +144,7 @@ impl Element {
         let n = f64::from(within("count", count as f32, 1.0, 1e6)?);
         let diameter = f64::from(within("bore (m)", bore.as_metres(), 1e-6, 0.05)?);
         let area = n * PI * diameter * diameter / 4.0;
-        Self::from_sizes(Shape::RoundTubes, area, diameter, length)
+        Self::from_sizes(Shape::RoundTubes, ROUND_TUBES, [area, diameter], length)
     }
 
     /// Flat slots of one full gap and a total width.
@@ -156,25 +156,60 @@ impl Element {
     pub fn parallel_plates(gap: Length, width: Length, length: Length) -> Result<Self, Error> {
         let s = f64::from(within("gap (m)", gap.as_metres(), 1e-6, 0.01)?);
         let w = f64::from(within("width (m)", width.as_metres(), 1e-4, 1000.0)?);
-        Self::from_sizes(Shape::ParallelPlates, s * w, 2.0 * s, length)
+        Self::from_sizes(Shape::ParallelPlates, PARALLEL_PLATES, [s * w, 2.0 * s], length)
     }
 
-    fn from_sizes(shape: Shape, area: f64, diameter: f64, length: Length) -> Result<Self, Error> {
+    /// A matrix of other channels whose friction is known: f Re from [`ducts`](super::ducts), hydraulic diameter, total
+    /// open area (m2) and length.
+    ///
+    /// `A = 2 fRe L/(a Dh^2)`, `B = K1/a^2` with K1 = 1, the middle of tubes and plates; slip factor fRe/2, entrance off.
+    ///
+    /// # Errors
+    /// Names the value outside 10..30 (f Re), 1 um..50 mm, 1e-12..10 m2 or 0.1 mm..10 m (length).
+    ///
+    /// ```
+    /// use evenbore::element::{Element, ducts};
+    /// use evenbore::quantity::Length;
+    /// // 500 square channels of 0.5 mm side, 80 mm long.
+    /// let side = Length::from_millimetres(0.5);
+    /// let element = Element::duct(ducts::rectangle(1.0)?, side, 500.0 * 0.25e-6, Length::from_millimetres(80.0))?;
+    /// assert!((element.a() / 7.284e10 - 1.0).abs() < 1e-3);
+    /// # Ok::<(), evenbore::error::Error>(())
+    /// ```
+    pub fn duct(
+        friction_reynolds: f32,
+        hydraulic_diameter: Length,
+        open_area_m2: f32,
+        length: Length,
+    ) -> Result<Self, Error> {
+        let friction_reynolds = within("friction factor times Reynolds number", friction_reynolds, 10.0, 30.0)?;
+        let diameter = within("hydraulic diameter (m)", hydraulic_diameter.as_metres(), 1e-6, 0.05)?;
+        let area = within("open area (m2)", open_area_m2, 1e-12, 10.0)?;
+        let constants = ShapeConstants { friction_reynolds, ..OTHER };
+        Self::from_sizes(Shape::Other, constants, [area, diameter].map(f64::from), length)
+    }
+
+    fn from_sizes(
+        shape: Shape,
+        constants: ShapeConstants,
+        [area, diameter]: [f64; 2],
+        length: Length,
+    ) -> Result<Self, Error> {
         let metres = f64::from(within("length (m)", length.as_metres(), 1e-4, 10.0)?);
-        let constants = shape.constants();
         let a = 2.0 * f64::from(constants.friction_reynolds) * metres / (area * diameter * diameter);
         let b = f64::from(constants.kinetic_loss) / (area * area);
-        Ok(Self {
+        let nominal = Self {
             shape,
             constants,
-            a: a as f32,
-            b: b as f32,
+            a: 1.0,
+            b: 0.0,
             open_area: area as f32,
             hydraulic_diameter: diameter as f32,
             length: metres as f32,
             expansion: 0.0,
             reference_temperature: 293.15,
-        })
+        };
+        nominal.with_coefficients(a as f32, b as f32)
     }
 
     /// A matrix of unknown channels: A (1/m3) and B (1/m4) from a calibration, entrance and slip terms off.
