@@ -36,11 +36,10 @@ pub fn sample(b: &Bench<'_>) -> MaybeUninit<Result<Sample, Refusal>> {
 /// Conditions prepared anew, then a pressure drop.
 pub fn full(b: &Bench<'_>) -> MaybeUninit<Result<Sample, Refusal>> {
     let r = &b.reading;
-    MaybeUninit::new(
-        b.meter
-            .conditions(r.temperature, r.line_pressure, r.relative_humidity)
-            .and_then(|conditions| conditions.sample(r.pressure_drop)),
-    )
+    MaybeUninit::new(match &b.meter.conditions(r.temperature, r.line_pressure, r.relative_humidity) {
+        Ok(conditions) => conditions.sample(r.pressure_drop),
+        Err(refusal) => Err(*refusal),
+    })
 }
 
 /// The whole walk, from trims to uncertainty.
