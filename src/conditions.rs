@@ -1,7 +1,6 @@
 //! The slow half: all that depends on temperature, line pressure and humidity, prepared once per change.
 
-use crate::element::Element;
-use crate::element::law::Prepared;
+use crate::element::law::{Channels, Prepared};
 use crate::fluid::StoredFluid;
 use crate::fluid::moist_air::{Moisture, moisture};
 use crate::fluid::properties::{PropertiesAt, outside};
@@ -13,22 +12,21 @@ use crate::status::Refusal;
 pub(crate) struct State<F> {
     pub law: Prepared<F>,
     pub moisture: Moisture<F>,
-    pub temperature: F,
     /// Density at the line pressure, kg/m3.
     pub line_density: F,
     /// Lowest and highest pressure of the fluid's table, Pa.
     pub pressure_range: [F; 2],
-    /// 1/K.
+    /// Linear thermal expansion of the element, 1/K.
     pub element_expansion: F,
 }
 
 impl<F: Real> State<F> {
-    /// Prepares the law for `element` carrying `fluid` at `temperature` (K) and `line_pressure` (Pa).
+    /// Prepares the law for `channels` carrying `fluid` at `temperature` (K) and `line_pressure` (Pa).
     ///
     /// # Errors
     /// Refuses a state outside the fluid's table, and a humidity that cannot be or is not of air.
     pub fn new(
-        element: &Element,
+        channels: &Channels<F>,
         fluid: &StoredFluid,
         temperature: F,
         line_pressure: F,
@@ -38,7 +36,6 @@ impl<F: Real> State<F> {
         if !refusal.is_empty() {
             return Err(refusal);
         }
-        let molar_mass = F::stored(fluid.molar_mass);
         let moisture = match humidity {
             Some(fraction) => moisture(fluid, fraction, temperature, line_pressure)?,
             None => Moisture::none(),
@@ -47,14 +44,12 @@ impl<F: Real> State<F> {
         if humidity.is_some() {
             properties = moisture.moisten(properties);
         }
-        let flowing_mass = molar_mass * moisture.mass_factor;
         Ok(Self {
-            law: Prepared::new(element, properties, flowing_mass, temperature, line_pressure),
+            law: Prepared::new(channels, properties, line_pressure),
             moisture,
-            temperature,
             line_density: properties.density(line_pressure),
             pressure_range: fluid.pressure_range.map(F::stored),
-            element_expansion: F::stored(element.expansion),
+            element_expansion: channels.thermal_expansion,
         })
     }
 

@@ -7,7 +7,7 @@
 use crate::calibration::Quality;
 use crate::conditions::State;
 use crate::element::Element;
-use crate::element::law::Solution;
+use crate::element::law::{Channels, Solution};
 use crate::error::Error;
 use crate::fluid::StoredFluid;
 use crate::fluid::properties::{PropertiesAt, outside};
@@ -19,7 +19,7 @@ use crate::reading::{Reading, SensorUncertainty, Trims};
 use crate::reference::ReferenceConditions;
 use crate::regime::{LAMINAR_LIMIT, LARGEST_EXPANSION, RANGE_MARGIN, SLIP_LIMIT, judge};
 use crate::status::{Refusal, Status};
-use crate::uncertainty::{Sensitivities, Uncertainty, combine, common_part, fit_part, sensitivities, sensor_part};
+use crate::uncertainty::{Sensitivities, Uncertainty, common_part, fit_part, sensitivities, sensor_part};
 
 /// Kelvin over which a viscosity ratio's uncertainty grows from nothing to its stated value.
 const RATIO_SPAN: f32 = 50.0;
@@ -47,12 +47,15 @@ const RATIO_SPAN: f32 = 50.0;
 #[derive(Debug, Clone)]
 pub struct Meter<'a> {
     element: Element,
+    channels: Channels<f32>,
     fluid: &'a StoredFluid,
     quality: Quality,
     calibrated_on_this_fluid: bool,
     trims: Trims,
     sensors: SensorUncertainty,
     reference: ReferenceConditions,
+    /// Dry volume of a kilogram at the reference conditions, m3/kg; 0 where the fluid's table does not reach.
+    standard_volume: f32,
     standing: Status,
 }
 
@@ -75,14 +78,17 @@ impl<'a> Meter<'a> {
         element.check()?;
         fluid.check()?;
         quality.check()?;
+        let reference = ReferenceConditions::DIN_1343;
         Ok(Self {
             element,
+            channels: Channels::new(&element),
             fluid,
             quality,
             calibrated_on_this_fluid: true,
             trims: Trims::NONE,
             sensors: SensorUncertainty::COMMON,
-            reference: ReferenceConditions::DIN_1343,
+            reference,
+            standard_volume: standard_volume(fluid, &reference),
             standing: Status::empty(),
         })
     }
@@ -94,12 +100,13 @@ impl<'a> Meter<'a> {
     pub fn with_fluid<'b>(self, fluid: &'b StoredFluid) -> Result<Meter<'b>, Error> {
         fluid.check()?;
         let same = self.calibrated_on_this_fluid && fluid == self.fluid;
-        Ok(Meter { fluid, calibrated_on_this_fluid: same, ..self })
+        let standard_volume = standard_volume(fluid, &self.reference);
+        Ok(Meter { fluid, calibrated_on_this_fluid: same, standard_volume, ..self })
     }
 
     /// The same meter quoting standard flow at other reference conditions.
     pub fn with_reference(self, reference: ReferenceConditions) -> Self {
-        Self { reference, ..self }
+        Self { reference, standard_volume: standard_volume(self.fluid, &reference), ..self }
     }
 
     /// The same meter with trims and uncertainties of its sensors.
@@ -158,12 +165,13 @@ impl<'a> Meter<'a> {
     pub fn flow_with(&self, reading: &Reading, sensors: &SensorUncertainty) -> Result<Flow, Refusal> {
         let reading = self.trims.apply(reading);
         reading.check()?;
-        let conditions = self.conditions(reading.temperature, reading.line_pressure, reading.relative_humidity)?;
+        // Borrowed, because moving what was prepared would double the stack.
+        let conditions = &self.conditions(reading.temperature, reading.line_pressure, reading.relative_humidity);
+        let conditions = conditions.as_ref().map_err(|refusal| *refusal)?;
         let solution = conditions.solve(reading.pressure_drop)?;
         let sample = conditions.interpret(&solution);
         let sensitivities = conditions.sensitivities(&solution, &reading);
-        let u_water = conditions.state.moisture.u_viscosity;
-        let u_viscosity = combine(self.u_viscosity(reading.temperature), u_water);
+        let u_viscosity = [self.u_viscosity(reading.temperature), conditions.state.moisture.u_viscosity];
         let uncertainty = self.uncertainty(&sensitivities, sensors, &reading, u_viscosity);
         Ok(Flow { sample, sensitivities, uncertainty })
     }
@@ -180,20 +188,14 @@ impl<'a> Meter<'a> {
     ) -> Result<Conditions, Refusal> {
         let (t, p) = (temperature.as_kelvin(), line_pressure.as_pascals());
         let humidity = humidity.map(RelativeHumidity::as_fraction);
-        let state = State::new(&self.element, self.fluid, t, p, humidity)?;
+        let state = State::new(&self.channels, self.fluid, t, p, humidity)?;
         Ok(Conditions {
             state,
-            element: self.element,
-            standard_density: self.standard_density(),
+            reynolds_per_metre: self.channels.reynolds,
+            standard_volume: self.standard_volume * state.moisture.dry_share,
             x_calibrated: self.quality.x_max_m,
             standing: self.standing,
         })
-    }
-
-    /// Density at the reference conditions, kg/m3; 0 where the fluid's table does not reach.
-    fn standard_density(&self) -> f32 {
-        let (t, p) = (self.reference.temperature.as_kelvin(), self.reference.pressure.as_pascals());
-        if outside(self.fluid, t, p).is_empty() { PropertiesAt::new(self.fluid, t).density(p) } else { 0.0 }
     }
 
     fn uncertainty(
@@ -201,7 +203,7 @@ impl<'a> Meter<'a> {
         s: &Sensitivities,
         sensors: &SensorUncertainty,
         reading: &Reading,
-        u_viscosity: f32,
+        u_viscosity: [f32; 2],
     ) -> Uncertainty {
         let (drop, p) = (reading.pressure_drop.as_pascals(), reading.line_pressure.as_pascals());
         Uncertainty {
@@ -223,12 +225,20 @@ impl<'a> Meter<'a> {
     }
 }
 
+/// Dry volume of a kilogram at reference conditions, m3/kg; 0 where the fluid's table does not reach.
+fn standard_volume(fluid: &StoredFluid, reference: &ReferenceConditions) -> f32 {
+    let (t, p) = (reference.temperature.as_kelvin(), reference.pressure.as_pascals());
+    if outside(fluid, t, p).is_empty() { 1.0 / PropertiesAt::new(fluid, t).density(p) } else { 0.0 }
+}
+
 /// The slow half of the walk: one temperature, one line pressure, one humidity.
 #[derive(Debug, Clone, Copy)]
 pub struct Conditions {
     state: State<f32>,
-    element: Element,
-    standard_density: f32,
+    /// Reynolds number over x, 1/m.
+    reynolds_per_metre: f32,
+    /// Dry volume at the reference conditions that a kilogram carries, m3/kg; 0 where the fluid's table does not reach.
+    standard_volume: f32,
     x_calibrated: f32,
     standing: Status,
 }
@@ -262,7 +272,7 @@ impl Conditions {
         let p1 = law.line_pressure;
         let mu = law.fluid.viscosity(p1);
         let volume = |x: f32| if x > 0.0 { x * mu / self.state.line_density } else { f32::INFINITY };
-        let per_x = self.element.reynolds(1.0);
+        let per_x = self.reynolds_per_metre;
         let gas = law.compressible > 0.0;
         Limits {
             laminar: volume(if per_x > 0.0 { LAMINAR_LIMIT / per_x } else { 0.0 }),
@@ -281,17 +291,17 @@ impl Conditions {
 
     fn interpret(&self, at: &Solution<f32>) -> Sample {
         let mass = at.x * at.viscosity;
-        let dry = mass * self.state.moisture.dry_share;
-        let standard = if self.standard_density > 0.0 { Some(dry / self.standard_density) } else { None };
+        let standard = if self.standard_volume > 0.0 { Some(mass * self.standard_volume) } else { None };
+        let reynolds = at.x.abs() * self.reynolds_per_metre;
         Sample {
             volume: VolumeFlow::from_cubic_metres_per_second(mass / self.state.line_density),
             mass: MassFlow::from_kilograms_per_second(mass),
             standard: standard.map(VolumeFlow::from_cubic_metres_per_second),
             viscosity: Viscosity::from_pascal_seconds(at.viscosity),
             density: Density::from_kilograms_per_cubic_metre(self.state.line_density),
-            reynolds: self.element.reynolds(at.x),
+            reynolds,
             kinetic_share: at.kinetic_share,
-            status: self.standing | judge(&self.element, self.x_calibrated, at),
+            status: self.standing | judge(reynolds, self.x_calibrated, at),
         }
     }
 

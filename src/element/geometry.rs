@@ -15,7 +15,7 @@
 //!
 //! The entrance of a real, sharp-edged inlet is not in these constants; a calibration absorbs it.
 
-use crate::error::{Error, within};
+use crate::error::{Error, Limit, all_within, within};
 use crate::quantity::{Length, Temperature};
 
 /// Shape of the channels.
@@ -86,16 +86,19 @@ impl Shape {
 
 impl ShapeConstants {
     fn check(&self) -> Result<(), Error> {
-        within("friction factor times Reynolds number", self.friction_reynolds, 1.0, 100.0)?;
-        within("kinetic loss", self.kinetic_loss, 0.1, 10.0)?;
-        within("kinetic-energy factor", self.kinetic_energy_factor, 0.0, 10.0)?;
-        within("thermal factor", self.thermal_factor, 0.0, 10.0)?;
-        let [h0, k, c, d] = self.entrance;
-        within("entrance h0", h0, 0.0, 0.9)?;
-        within("entrance k", k, 0.0, 1e4)?;
-        within("entrance c", c, 0.0, 1.0)?;
-        within("entrance d", d, 1e-3, 10.0)?;
-        Ok(())
+        const LIMITS: [Limit; 4] = [
+            ("friction factor times Reynolds number", 1.0, 100.0),
+            ("kinetic loss", 0.1, 10.0),
+            ("kinetic-energy factor", 0.0, 10.0),
+            ("thermal factor", 0.0, 10.0),
+        ];
+        const ENTRANCE: [Limit; 4] =
+            [("entrance h0", 0.0, 0.9), ("entrance k", 0.0, 1e4), ("entrance c", 0.0, 1.0), ("entrance d", 1e-3, 10.0)];
+        all_within(
+            &LIMITS,
+            [self.friction_reynolds, self.kinetic_loss, self.kinetic_energy_factor, self.thermal_factor],
+        )?;
+        all_within(&ENTRANCE, self.entrance)
     }
 }
 
@@ -124,6 +127,10 @@ pub struct Element {
 }
 
 const PI: f64 = core::f64::consts::PI;
+
+const COEFFICIENTS: [Limit; 2] = [("a (1/m3)", 1.0, 1e30), ("b (1/m4)", 0.0, 1e30)];
+
+const GROWTH: [Limit; 2] = [("expansion (1/K)", -1e-4, 1e-3), ("reference temperature (K)", 100.0, 1000.0)];
 
 impl Element {
     /// `count` straight round tubes of one bore and length.
@@ -236,8 +243,8 @@ impl Element {
     /// # Errors
     /// Names the value outside -1e-4..1e-3 1/K or 100..1000 K.
     pub fn with_expansion(self, per_kelvin: f32, reference: Temperature) -> Result<Self, Error> {
-        let expansion = within("expansion (1/K)", per_kelvin, -1e-4, 1e-3)?;
-        let reference_temperature = within("reference temperature (K)", reference.as_kelvin(), 100.0, 1000.0)?;
+        let (expansion, reference_temperature) = (per_kelvin, reference.as_kelvin());
+        all_within(&GROWTH, [expansion, reference_temperature])?;
         Ok(Self { expansion, reference_temperature, ..self })
     }
 
@@ -246,7 +253,8 @@ impl Element {
     /// # Errors
     /// Names the coefficient outside 1..1e30 (A) or 0..1e30 (B).
     pub fn with_coefficients(self, a: f32, b: f32) -> Result<Self, Error> {
-        Ok(Self { a: within("a (1/m3)", a, 1.0, 1e30)?, b: within("b (1/m4)", b, 0.0, 1e30)?, ..self })
+        all_within(&COEFFICIENTS, [a, b])?;
+        Ok(Self { a, b, ..self })
     }
 
     /// A matrix of shape "other" with known hydraulic diameter (m) and open area (m2), which switch on the slip term
@@ -264,13 +272,12 @@ impl Element {
     /// # Errors
     /// Names the field that is not finite or outside its limits.
     pub fn check(&self) -> Result<(), Error> {
-        within("open area (m2)", self.open_area, 0.0, 1e6)?;
-        within("hydraulic diameter (m)", self.hydraulic_diameter, 0.0, 0.05)?;
-        within("length (m)", self.length, 0.0, 10.0)?;
+        const SIZES: [Limit; 3] =
+            [("open area (m2)", 0.0, 1e6), ("hydraulic diameter (m)", 0.0, 0.05), ("length (m)", 0.0, 10.0)];
+        all_within(&SIZES, [self.open_area, self.hydraulic_diameter, self.length])?;
         self.constants.check()?;
-        self.with_coefficients(self.a, self.b)?;
-        self.with_expansion(self.expansion, Temperature::from_kelvin(self.reference_temperature))?;
-        Ok(())
+        all_within(&COEFFICIENTS, [self.a, self.b])?;
+        all_within(&GROWTH, [self.expansion, self.reference_temperature])
     }
 
     /// Shape of the channels.

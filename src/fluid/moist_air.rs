@@ -8,13 +8,13 @@
 //! m0 (0.10 to 0.51, from memory), so its uncertainty is 0.12 x_w.
 
 use super::properties::{PropertiesAt, outside};
-use super::stored::StoredFluid;
+use super::stored::{Name, StoredFluid};
 use crate::math::Real;
 use crate::quantity::{AbsolutePressure, Density, RelativeHumidity, Temperature, Viscosity};
 use crate::status::Refusal;
 
 /// The fluid that carries humidity.
-const MOIST_FLUID: &str = "air";
+const MOIST_FLUID: Name = Name::new("air");
 
 /// Molar mass of water, kg/mol.
 const WATER_MOLAR_MASS: f64 = 0.018_015_28;
@@ -91,6 +91,7 @@ impl<F: Real> Moisture<F> {
         let [b, c, d] = dry.z;
         PropertiesAt {
             mu0: dry.mu0 * self.viscosity_factor,
+            viscosity_slope: dry.viscosity_slope * self.viscosity_factor,
             base: dry.base * self.mass_factor,
             z: [b + self.compressibility, c, d],
             ..dry
@@ -107,7 +108,7 @@ pub(crate) fn moisture<F: Real>(
 ) -> Result<Moisture<F>, Refusal> {
     let [low, high] = TEMPERATURE_RANGE.map(F::stored);
     let possible = fraction >= F::of(0.0) && fraction <= F::of(1.0) && temperature >= low && temperature <= high;
-    if !possible || fluid.name() != MOIST_FLUID {
+    if !possible || fluid.name != MOIST_FLUID {
         return Err(Refusal::HUMIDITY_INVALID);
     }
     let moisture = Moisture::new(fraction, temperature, pressure, F::stored(fluid.molar_mass));
