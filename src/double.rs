@@ -2,11 +2,11 @@
 //!
 //! Everything here is SI in plain `f64`. The tables and constants are those the device stores.
 
-use crate::conditions::State;
 use crate::element::Element;
 use crate::element::law::Channels;
 use crate::fluid::StoredFluid;
 use crate::fluid::properties::PropertiesAt;
+use crate::state::State;
 use crate::status::Refusal;
 
 /// Fluid properties at one temperature.

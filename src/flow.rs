@@ -5,21 +5,19 @@
 //! the [`Conditions`] and calls [`Conditions::sample`] for each pressure drop.
 
 use crate::calibration::Quality;
-use crate::conditions::State;
+use crate::conditions::{Conditions, Sample};
 use crate::element::Element;
-use crate::element::law::{Channels, Solution};
+use crate::element::law::Channels;
 use crate::error::Error;
+use crate::flow_curve::{Arithmetic, by_curve};
 use crate::fluid::StoredFluid;
 use crate::fluid::properties::{PropertiesAt, outside};
-use crate::math::Real;
-use crate::quantity::{
-    AbsolutePressure, Density, MassFlow, PressureDrop, RelativeHumidity, Temperature, Viscosity, VolumeFlow,
-};
+use crate::quantity::{AbsolutePressure, RelativeHumidity, Temperature};
 use crate::reading::{Reading, SensorUncertainty, Trims};
 use crate::reference::ReferenceConditions;
-use crate::regime::{LAMINAR_LIMIT, LARGEST_EXPANSION, RANGE_MARGIN, SLIP_LIMIT, judge};
+use crate::state::State;
 use crate::status::{Refusal, Status};
-use crate::uncertainty::{Sensitivities, Uncertainty, common_part, fit_part, sensitivities, sensor_part};
+use crate::uncertainty::{Sensitivities, Uncertainty, common_part, fit_part, sensor_part};
 
 /// Kelvin over which a viscosity ratio's uncertainty grows from nothing to its stated value.
 const RATIO_SPAN: f32 = 50.0;
@@ -57,6 +55,7 @@ pub struct Meter<'a> {
     /// Dry volume of a kilogram at the reference conditions, m3/kg; 0 where the fluid's table does not reach.
     standard_volume: f32,
     standing: Status,
+    arithmetic: Arithmetic,
 }
 
 impl<'a> Meter<'a> {
@@ -90,6 +89,7 @@ impl<'a> Meter<'a> {
             reference,
             standard_volume: standard_volume(fluid, &reference),
             standing: Status::empty(),
+            arithmetic: Arithmetic::Single,
         })
     }
 
@@ -128,6 +128,11 @@ impl<'a> Meter<'a> {
         self.with_sensors(trims, sensors)
     }
 
+    /// The same meter computing by another arithmetic.
+    pub fn with_arithmetic(self, arithmetic: Arithmetic) -> Self {
+        Self { arithmetic, ..self }
+    }
+
     /// The same meter with a status that stands beside every flow.
     pub fn with_standing(self, standing: Status) -> Self {
         Self { standing, ..self }
@@ -144,6 +149,10 @@ impl<'a> Meter<'a> {
     /// Uncertainties of the sensors.
     pub fn sensors(&self) -> &SensorUncertainty {
         &self.sensors
+    }
+    /// The arithmetic that computes the flow.
+    pub fn arithmetic(&self) -> Arithmetic {
+        self.arithmetic
     }
     /// Conditions at which standard flow is quoted.
     pub fn reference(&self) -> &ReferenceConditions {
@@ -169,9 +178,12 @@ impl<'a> Meter<'a> {
         let conditions = &self.conditions(reading.temperature, reading.line_pressure, reading.relative_humidity);
         let conditions = conditions.as_ref().map_err(|refusal| *refusal)?;
         let solution = conditions.solve(reading.pressure_drop)?;
-        let sample = conditions.interpret(&solution);
+        let sample = match self.arithmetic {
+            Arithmetic::Single => conditions.interpret(&solution),
+            Arithmetic::Curve => by_curve(conditions, conditions.interpret(&solution), reading.pressure_drop)?,
+        };
         let sensitivities = conditions.sensitivities(&solution, &reading);
-        let u_viscosity = [self.u_viscosity(reading.temperature), conditions.state.moisture.u_viscosity];
+        let u_viscosity = [self.u_viscosity(reading.temperature), conditions.u_viscosity_of_water()];
         let uncertainty = self.uncertainty(&sensitivities, sensors, &reading, u_viscosity);
         Ok(Flow { sample, sensitivities, uncertainty })
     }
@@ -229,122 +241,6 @@ impl<'a> Meter<'a> {
 fn standard_volume(fluid: &StoredFluid, reference: &ReferenceConditions) -> f32 {
     let (t, p) = (reference.temperature.as_kelvin(), reference.pressure.as_pascals());
     if outside(fluid, t, p).is_empty() { 1.0 / PropertiesAt::new(fluid, t).density(p) } else { 0.0 }
-}
-
-/// The slow half of the walk: one temperature, one line pressure, one humidity.
-#[derive(Debug, Clone, Copy)]
-pub struct Conditions {
-    state: State<f32>,
-    /// Reynolds number over x, 1/m.
-    reynolds_per_metre: f32,
-    /// Dry volume at the reference conditions that a kilogram carries, m3/kg; 0 where the fluid's table does not reach.
-    standard_volume: f32,
-    x_calibrated: f32,
-    standing: Status,
-}
-
-impl Conditions {
-    /// The flow that a pressure drop (trimmed) drives.
-    ///
-    /// # Errors
-    /// Refuses a pressure drop that is not finite or leads to a pressure outside the fluid's table.
-    pub fn sample(&self, pressure_drop: PressureDrop) -> Result<Sample, Refusal> {
-        Ok(self.interpret(&self.solve(pressure_drop)?))
-    }
-
-    /// The pressure drop that drives a mass flow: the inverse of [`Conditions::sample`].
-    ///
-    /// # Errors
-    /// Refuses a mass flow that is not finite, or that no outlet pressure within the fluid's table can drive.
-    pub fn pressure_drop(&self, mass_flow: MassFlow) -> Result<PressureDrop, Refusal> {
-        let flow = mass_flow.as_kilograms_per_second();
-        if !flow.is_finite() {
-            return Err(Refusal::NOT_FINITE);
-        }
-        let drop = self.state.law.pressure_drop(flow).ok_or(Refusal::OUTLET_VACUUM)?;
-        self.state.check(drop)?;
-        Ok(PressureDrop::from_pascals(drop))
-    }
-
-    /// Flows and pressure drops from which each flag is raised, for arithmetic that does not know x.
-    pub(crate) fn limits(&self) -> Limits {
-        let law = &self.state.law;
-        let p1 = law.line_pressure;
-        let mu = law.fluid.viscosity(p1);
-        let volume = |x: f32| if x > 0.0 { x * mu / self.state.line_density } else { f32::INFINITY };
-        let per_x = self.reynolds_per_metre;
-        let gas = law.compressible > 0.0;
-        Limits {
-            laminar: volume(if per_x > 0.0 { LAMINAR_LIMIT / per_x } else { 0.0 }),
-            range: volume(RANGE_MARGIN * self.x_calibrated),
-            expansion: if gas { p1 * LARGEST_EXPANSION } else { f32::INFINITY },
-            slip: if gas { (2.0 * (p1 - law.slip * mu / SLIP_LIMIT)).at_least(0.0) } else { f32::INFINITY },
-            standing: self.standing,
-        }
-    }
-
-    fn solve(&self, pressure_drop: PressureDrop) -> Result<Solution<f32>, Refusal> {
-        let drop = pressure_drop.as_pascals();
-        self.state.check(drop)?;
-        Ok(self.state.law.solve(drop))
-    }
-
-    fn interpret(&self, at: &Solution<f32>) -> Sample {
-        let mass = at.x * at.viscosity;
-        let standard = if self.standard_volume > 0.0 { Some(mass * self.standard_volume) } else { None };
-        let reynolds = at.x.abs() * self.reynolds_per_metre;
-        Sample {
-            volume: VolumeFlow::from_cubic_metres_per_second(mass / self.state.line_density),
-            mass: MassFlow::from_kilograms_per_second(mass),
-            standard: standard.map(VolumeFlow::from_cubic_metres_per_second),
-            viscosity: Viscosity::from_pascal_seconds(at.viscosity),
-            density: Density::from_kilograms_per_cubic_metre(self.state.line_density),
-            reynolds,
-            kinetic_share: at.kinetic_share,
-            status: self.standing | judge(reynolds, self.x_calibrated, at),
-        }
-    }
-
-    fn sensitivities(&self, at: &Solution<f32>, reading: &Reading) -> Sensitivities {
-        let humidity = reading.relative_humidity.map_or(0.0, RelativeHumidity::as_fraction);
-        sensitivities(&self.state, at, reading.pressure_drop.as_pascals(), humidity)
-    }
-}
-
-/// See [`Conditions::limits`].
-pub(crate) struct Limits {
-    /// Volume flow at the laminar limit, m3/s.
-    pub laminar: f32,
-    /// Volume flow at the end of the calibrated range, m3/s.
-    pub range: f32,
-    /// Pressure drop at the expansion limit, Pa.
-    pub expansion: f32,
-    /// Pressure drop at the slip limit, Pa.
-    pub slip: f32,
-    /// Flags of every flow.
-    pub standing: Status,
-}
-
-/// A flow and its status; [`Flow`] adds the uncertainty.
-#[derive(Debug, Clone, Copy, PartialEq)]
-#[cfg_attr(feature = "defmt", derive(defmt::Format))]
-pub struct Sample {
-    /// Volume flow at the temperature and line pressure that were read.
-    pub volume: VolumeFlow,
-    /// Mass flow, of moist air with its water.
-    pub mass: MassFlow,
-    /// Volume flow at the reference conditions, dry; absent where the fluid's table does not reach them.
-    pub standard: Option<VolumeFlow>,
-    /// Viscosity at the mean pressure.
-    pub viscosity: Viscosity,
-    /// Density at the line pressure.
-    pub density: Density,
-    /// Reynolds number; 0 when the channels are unknown.
-    pub reynolds: f32,
-    /// Kinetic over viscous pressure drop.
-    pub kinetic_share: f32,
-    /// What the flow is worth.
-    pub status: Status,
 }
 
 /// A flow with status and uncertainty.

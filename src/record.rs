@@ -12,6 +12,7 @@ use crate::calibration::Quality;
 use crate::element::Element;
 use crate::error::{Error, within};
 use crate::flow::Meter;
+use crate::flow_curve::Arithmetic;
 use crate::fluid::StoredFluid;
 use crate::fluid::stored::Name;
 use crate::reading::{SensorUncertainty, Trims};
@@ -28,15 +29,6 @@ pub const REASON_LENGTH: usize = 64;
 const MARK: [u8; 4] = *b"EVBR";
 const VERSION: u16 = 1;
 const CRC: crc::Crc<u32> = crc::Crc::<u32>::new(&crc::CRC_32_ISO_HDLC);
-
-/// Which arithmetic computes the flow; named in the record so that certificate and instrument agree to the bit.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-#[cfg_attr(feature = "defmt", derive(defmt::Format))]
-#[cfg_attr(feature = "serde", derive(serde::Serialize, serde::Deserialize), serde(rename_all = "kebab-case"))]
-pub enum Arithmetic {
-    /// IEEE 754 single precision, as written in this crate.
-    Single,
-}
 
 /// A calibration record.
 ///
@@ -135,6 +127,7 @@ impl Record {
         Ok(Meter::calibrated(self.element, &self.fluid, self.quality.clone())?
             .with_sensors(self.trims, self.sensors)?
             .with_reference(self.reference)
+            .with_arithmetic(self.arithmetic)
             .with_standing(standing))
     }
 
@@ -210,11 +203,7 @@ fn read(r: &mut Reader<'_>) -> Result<Record, Error> {
         serial,
         date,
         events,
-        arithmetic: if arithmetic == Arithmetic::Single as u8 {
-            Arithmetic::Single
-        } else {
-            return Err(Error::UnknownCode { field: "arithmetic", code: arithmetic });
-        },
+        arithmetic: arithmetic_of(arithmetic)?,
         reason,
         trims,
         sensors,
@@ -223,4 +212,9 @@ fn read(r: &mut Reader<'_>) -> Result<Record, Error> {
         element: r.element(shape)?,
         fluid: r.fluid(phase)?,
     })
+}
+
+fn arithmetic_of(code: u8) -> Result<Arithmetic, Error> {
+    let known = [Arithmetic::Single, Arithmetic::Curve].into_iter().find(|known| *known as u8 == code);
+    known.ok_or(Error::UnknownCode { field: "arithmetic", code })
 }

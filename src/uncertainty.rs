@@ -11,10 +11,10 @@
 //! (asserted in `tests/accuracy.rs`).
 
 use crate::calibration::{Cause, Quality};
-use crate::conditions::State;
 use crate::element::law::Solution;
 use crate::math::Real;
 use crate::reading::SensorUncertainty;
+use crate::state::State;
 
 /// Relative standard uncertainty of a flow in three parts.
 #[derive(Debug, Clone, Copy, PartialEq, Default)]

@@ -3,8 +3,8 @@
 mod common;
 
 use common::{Errors, constant_liquid, number, rows, tolerance};
+use evenbore::conditions::Conditions;
 use evenbore::element::ducts::concentric_annulus;
-use evenbore::flow::Conditions;
 use evenbore::quantity::{AbsolutePressure, Length, MassFlow, PressureDrop, Temperature};
 use evenbore::{Element, Meter, Status};
 use std::f64::consts::PI;

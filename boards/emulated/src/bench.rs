@@ -3,7 +3,8 @@
 use crate::baseline::Simple;
 use core::mem::MaybeUninit;
 use evenbore::error::Error;
-use evenbore::flow::{Conditions, Flow, Sample};
+use evenbore::conditions::{Conditions, Sample};
+use evenbore::flow::Flow;
 use evenbore::record::RECORD_LENGTH;
 use evenbore::{Meter, Reading, Record, Refusal};
 
