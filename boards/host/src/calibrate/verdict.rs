@@ -197,11 +197,7 @@ fn distance_from_drawing(points: &Points, order: &Order<'_>, fluid: &StoredFluid
 const MOST_NAMES: usize = 3;
 
 /// The record of a fit.
-fn record(
-    order: &Order<'_>,
-    solution: &Solution,
-    used: &[Sample],
-) -> Result<Record, evenbore::error::Error> {
+fn record(order: &Order<'_>, solution: &Solution, used: &[Sample]) -> Result<Record, evenbore::error::Error> {
     let (x_min, x_max) = span(used);
     let [u_a, u_b] = solution.covariance.standard_uncertainties();
     let dof = solution.type_a_degrees_of_freedom();

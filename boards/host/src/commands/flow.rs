@@ -91,7 +91,9 @@ pub fn run(arguments: &Arguments) -> Result<Ended, Problem> {
         }
         let reading = plan.reading(&row)?;
         // A wrong unit shows in the first row; later ones are a sensor's own affair, and have their status.
-        if std::mem::take(&mut first) && let Some(doubt) = plan.doubt(&row, &reading) {
+        if std::mem::take(&mut first)
+            && let Some(doubt) = plan.doubt(&row, &reading)
+        {
             eprintln!("evenbore: {doubt}");
         }
         let meter = meters.of(&row, &plan, reading.fluid)?;
@@ -298,11 +300,17 @@ impl Results {
                 self.record.clear();
                 Ok(())
             }
-            Err(error) => Err(self.explain(error.into())),
+            Err(error) => Err(self.explain(error)),
         }
     }
 
-    fn explain(&self, error: std::io::Error) -> Problem {
+    /// The system's own error, which says whether a pipe was closed, out of its wrapping.
+    fn explain(&self, error: csv::Error) -> Problem {
+        let message = error.to_string();
+        let error = match error.into_kind() {
+            csv::ErrorKind::Io(error) => error,
+            _ => std::io::Error::other(message),
+        };
         self.writer.get_ref().problem(&error)
     }
 

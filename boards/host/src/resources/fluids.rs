@@ -172,8 +172,10 @@ fn check_rows(declared: &NamedFluid, fluid: &StoredFluid) -> Result<(), Problem>
     for row in rows {
         let at = Properties::at(fluid, row.temperature);
         let pressure = pressure_kpa * 1e3;
-        let found = [("viscosity", at.viscosity(pressure), row.viscosity), ("density", at.density(pressure), row.density)];
-        if let Some((what, stored, given)) = found.into_iter().find(|(_, s, g)| (s / g - 1.0).abs() > LARGEST_RESIDUAL) {
+        let found =
+            [("viscosity", at.viscosity(pressure), row.viscosity), ("density", at.density(pressure), row.density)];
+        if let Some((what, stored, given)) = found.into_iter().find(|(_, s, g)| (s / g - 1.0).abs() > LARGEST_RESIDUAL)
+        {
             let message = format!(
                 "[{}]: the stored curve gives a {what} of {stored:.5e} where the row has {given:.5e}, {:+.2} % (limit \
                  0.1 %): rows this far from a smooth curve need a narrower range of temperature or a second look",
