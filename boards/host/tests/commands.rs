@@ -285,6 +285,16 @@ fn a_reader_that_goes_away_is_no_error() -> Outcome {
     Ok(())
 }
 
+/// The workshop's files are what its script makes, where there is a Python to ask.
+#[test]
+fn the_workshop_is_what_its_script_makes() -> Outcome {
+    let script = format!("{WORKSHOP}/make.py");
+    if let Ok(output) = Command::new("python3").args(["-B", &script, "--check"]).output() {
+        assert!(output.status.success(), "{}", err(&output));
+    }
+    Ok(())
+}
+
 /// Kinds of the findings, exit code, and whether a record is there.
 fn judged(sheet: &Sheet, more: &str) -> Result<(Option<i32>, Vec<String>, bool, Value), Box<dyn Error>> {
     let bench = Bench::new()?;
