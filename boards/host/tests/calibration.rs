@@ -229,6 +229,25 @@ fn assert_effects(law: &Conditions, fluid: &StoredFluid, [tolerance_b, gain_b]: 
     }
 }
 
+/// What the reference's own thermometer and barometer share counts as an error of its flow, with its size beside it.
+#[test]
+fn conditions_at_the_reference_are_part_of_it() {
+    let errors = Errors { flow: 5e-4, drop: 5e-4, ..Errors::default() };
+    let mut run = run(&law(&made()), &drops(12), &errors, &mut Noise(3));
+    for point in &mut run.points {
+        let Reference::Volume { temperature, pressure, u_temperature, u_pressure, .. } = &mut point.reference else {
+            panic!("a volume flow");
+        };
+        (*temperature, *pressure) = (Some(T), Some(P));
+        u_temperature.common = Some(3e-4 * T);
+        u_pressure.common = Some(4e-4 * P);
+    }
+    let found = fitted(&run, NITROGEN.fluid());
+    let part = found.common.iter().find(|part| part.cause == Cause::ReferenceFlow).expect("a part");
+    assert_close(part.u, 5e-4, 2e-2, "u of the reference");
+    assert_close(part.shift[0].abs() / found.a, 5e-4, 1e-2, "its effect on A");
+}
+
 /// Effective variance against the exact line with errors in both axes (York 2004).
 #[test]
 fn effective_variance_agrees_with_errors_in_both_axes() {
@@ -384,4 +403,23 @@ fn the_edge_of_a_table_is_part_of_it() {
     };
     let run = points(drops(10).into_iter().enumerate().map(at_edge).collect());
     assert_close(judged(&run).calibration.a, f64::from(element.a()), 1e-6, "A");
+}
+
+/// A run with no fault is refused about as often as the limits say: 1 % by chi-squared or F, and a little by outliers.
+#[test]
+fn good_runs_are_rarely_refused() {
+    let errors = Errors { flow: 1e-3, drop: 7e-4, flow_common: 1.5e-3, ..Errors::default() };
+    for stated in [true, false] {
+        let refused = (0..1000_u64).filter(|draw| {
+            let mut run = run(&law(&made()), &drops(16), &errors, &mut Noise(5 + draw * 6_271));
+            if !stated {
+                for point in &mut run.points {
+                    (point.u, point.u_reference) = (RowUncertainty::default(), Parts::default());
+                }
+            }
+            !judged(&run).calibration.accepted
+        });
+        let share = refused.count() as f64 / 1000.0;
+        assert!((0.002..0.035).contains(&share), "stated {stated}: {share}");
+    }
 }

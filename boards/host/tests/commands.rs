@@ -295,15 +295,17 @@ fn the_workshop_is_what_its_script_makes() -> Outcome {
     Ok(())
 }
 
-/// Kinds of the findings, exit code, and whether a record is there.
-fn judged(sheet: &Sheet, more: &str) -> Result<(Option<i32>, Vec<String>, bool, Value), Box<dyn Error>> {
+/// Exit code, kinds of the findings, whether a record is there, and calibration.json.
+type Judged = (Option<i32>, Vec<String>, bool, Value);
+
+fn judged(sheet: &Sheet, more: &str) -> Result<Judged, Box<dyn Error>> {
     let bench = Bench::new()?;
     bench.write("doctored.csv", sheet.text())?;
     let (code, found) = bench.calibrate("doctored.csv", more)?;
     let list = found["findings"].as_array().ok_or("findings")?;
     for finding in list {
         let message = finding["message"].as_str().unwrap_or_default();
-        assert!(message.starts_with(|c: char| c.is_uppercase()), "{message}");
+        assert!(message.starts_with(|c: char| c.is_uppercase()) && message.ends_with('.'), "{message}");
     }
     let kinds = list.iter().map(|finding| finding["kind"].as_str().unwrap_or_default().to_owned()).collect();
     let records = ["out/record.toml", "out/record.bin"].map(|name| bench.path(name).exists());

@@ -70,6 +70,7 @@ pub fn calibrate(points: &Points, order: &Order<'_>) -> Result<Verdict, Problem>
     };
     let mut findings = findings::diagnose(&run).map_err(general)?;
     name_other_fluids(&mut findings, points, order);
+    findings.iter_mut().for_each(|finding| finding.message.push('.'));
     let refused = findings.iter().any(|finding| finding.refuses);
     let record = record(order, &solution, &used).map_err(|e| Problem::new(&points.file, e.to_string()))?;
     let calibration = outcome(points, order, &run, &all, findings, &record);
