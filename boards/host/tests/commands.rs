@@ -502,6 +502,8 @@ fn bad_tables_are_refused_with_their_place() -> Outcome {
     assert_bad(with_cell(DROP, "0")?, &["bad.csv:2", "needs a pressure drop"])?;
     assert_bad(with_cell("fluid", "argon")?, &["bad.csv:3, column 13 (fluid)", "one fluid"])?;
     assert_bad(with_cell("u_pressure_drop_Pa", "-0.1")?, &["bad.csv:2, column 2", "negative"])?;
+    assert_bad(with_cell("u_pressure_drop_Pa", "200")?, &["bad.csv:2", "uncertainty of the pressure drop is 2e2 Pa"])?;
+    assert_bad(with_cell(FLOW, "1e300")?, &["bad.csv:2", "that of no element"])?;
     assert_bad(with_cell("temperature_C", "295.1")?, &["bad.csv:2, column 3", "is this column in K?"])?;
     assert_bad(sheet.clone().keep(|_, i| i == 0).text(), &["1 point is used"])?;
     assert_bad(sheet.clone().keep(|_, i| [3, 12].contains(&i)).text(), &["2 points are used"])?;
