@@ -43,7 +43,7 @@ pub struct Prior {
 pub struct CommonShift {
     /// The cause.
     pub cause: Cause,
-    /// Largest relative standard uncertainty among the points (kelvin for temperature, pascal for a zero).
+    /// Largest standard uncertainty among the points: relative, kelvin for temperature.
     pub u: f64,
     /// Change of A and B.
     pub shift: [f64; 2],
@@ -72,17 +72,13 @@ pub struct Solution {
     pub leave_one_out: Vec<f64>,
     /// Basis of the uncertainties.
     pub basis: Basis,
+    /// Relative standard uncertainty of every Y when the residuals are the basis.
+    pub scatter: f64,
     /// The prior used, if any.
     pub prior: Option<Prior>,
 }
 
 impl Solution {
-    /// Relative scatter of Y about the fit, when the residuals are the basis.
-    fn relative_scatter(&self, samples: &[Sample]) -> f64 {
-        let first = self.sigmas.iter().zip(samples).next();
-        first.map_or(1.0, |(sigma, sample)| sigma / sample.columns.y.abs()).max(f64::EPSILON)
-    }
-
     /// Effective degrees of freedom of the fit's uncertainty: infinite when it was stated beforehand.
     pub fn type_a_degrees_of_freedom(&self) -> f64 {
         if self.basis == Basis::Stated { f64::INFINITY } else { self.degrees_of_freedom as f64 }
@@ -105,9 +101,13 @@ impl Solution {
     }
 }
 
+/// Whether a sample states an independent uncertainty; one of zero states nothing, since nothing is exact.
+fn states(sample: &Sample) -> bool {
+    sample.sources.iter().any(|(_, parts, _)| parts.independent.is_some_and(|u| u > 0.0))
+}
+
 /// Basis that a set of samples offers.
 pub fn basis_of(samples: &[Sample]) -> Basis {
-    let states = |sample: &Sample| sample.sources.iter().any(|(_, parts, _)| parts.independent.is_some());
     if samples.iter().any(states) { Basis::Stated } else { Basis::Residuals }
 }
 
@@ -121,21 +121,24 @@ fn effective(sample: &Sample, a: f64, b: f64) -> f64 {
 pub fn sigma_of(sample: &Sample, solution: &Solution) -> f64 {
     match solution.basis {
         Basis::Stated => effective(sample, solution.a, solution.b),
-        Basis::Residuals => solution.sigmas.first().map_or(f64::NAN, |s| s * sample.columns.y / solution.a),
+        Basis::Residuals => solution.scatter * sample.columns.y.abs(),
     }
 }
 
 /// A sample that states no independent uncertainty although others do: its line in the points file.
 pub fn unstated_line(samples: &[Sample]) -> Option<u64> {
-    let silent = |s: &&Sample| s.sources.iter().all(|(_, parts, _)| parts.independent.is_none_or(|u| u == 0.0));
-    (basis_of(samples) == Basis::Stated).then(|| samples.iter().find(silent).map(|s| s.line)).flatten()
+    let silent = samples.iter().filter(|sample| !states(sample)).map(|sample| sample.line).min();
+    silent.filter(|_| basis_of(samples) == Basis::Stated)
 }
 
 /// Effect on every residual of one standard uncertainty of what `cause` shares among the points.
 fn common_effects(samples: &[Sample], cause: Cause, u_viscosity: f64, a: f64, b: f64) -> Vec<f64> {
     let of_sources = |sample: &Sample, wanted: &[Source]| {
         let parts = sample.sources.iter().filter(|(source, _, _)| wanted.contains(source));
-        let effects = parts.map(|(_, parts, slope)| parts.common.unwrap_or(0.0) * slope.of_residual(a, b));
+        let effects = parts.map(|(source, parts, slope)| {
+            let turned = if is_gain(*source, cause) { sample.pressure_drop.signum() } else { 1.0 };
+            parts.common.unwrap_or(0.0) * slope.of_residual(a, b) * turned
+        });
         // Sources of one cause that act alike add in squares and keep the sign of the first.
         let (first, squares) =
             effects.fold((0.0, 0.0), |(first, sum), e| (if first == 0.0 { e } else { first }, sum + e * e));
@@ -146,12 +149,17 @@ fn common_effects(samples: &[Sample], cause: Cause, u_viscosity: f64, a: f64, b:
         Cause::ReferenceFlow => {
             of_sources(sample, &[Source::ReferenceFlow, Source::ReferenceTemperature, Source::ReferencePressure])
         }
-        Cause::Density => of_sources(sample, &[Source::LinePressure]),
+        Cause::Density => of_sources(sample, &[Source::LinePressure, Source::RelativeHumidity]),
         Cause::Temperature => of_sources(sample, &[Source::Temperature]),
         Cause::PressureDrop | Cause::PressureDropZero => of_sources(sample, &[Source::PressureDrop]),
         Cause::Geometry => 0.0,
     };
     samples.iter().map(effect).collect()
+}
+
+/// Whether a common part follows the size of its value, so that it turns round with the flow.
+fn is_gain(source: Source, cause: Cause) -> bool {
+    source == Source::ReferenceFlow || (source == Source::PressureDrop && cause == Cause::PressureDrop)
 }
 
 /// Whether the common part of the pressure drop is a zero (one pascal value) rather than a gain (one relative value).
@@ -222,7 +230,7 @@ pub fn fit(samples: &[Sample], u_viscosity: f64, prior: Option<Prior>) -> Result
     let basis = basis_of(samples);
     let known_scatter = match (basis, prior) {
         // A prior needs errors of known size beside it: those of the fit without it.
-        (Basis::Residuals, Some(_)) => Some(fit(samples, u_viscosity, None)?.relative_scatter(samples)),
+        (Basis::Residuals, Some(_)) => Some(fit(samples, u_viscosity, None)?.scatter.max(f64::EPSILON)),
         _ => None,
     };
     let problem = Problem { samples, prior, zero: zero_like(samples), scatter: known_scatter.unwrap_or(1.0) };
@@ -254,6 +262,7 @@ pub fn fit(samples: &[Sample], u_viscosity: f64, prior: Option<Prior>) -> Result
         leave_one_out: leave_one_out(&fit, basis, n),
         sigmas: sigmas.iter().take(n).map(|s| s * unit).collect(),
         basis,
+        scatter: problem.scatter * unit,
         prior,
     })
 }
@@ -286,28 +295,52 @@ fn shifts(problem: &Problem<'_>, u_viscosity: f64, sigmas: &[f64], a: f64, b: f6
         }
         effects.extend(problem.prior.map(|_| 0.0));
         let answer = problem.solve(&effects, sigmas, &zero)?;
-        let u = largest_u(problem.samples, cause, u_viscosity);
-        shifts.push(CommonShift { cause, u, shift: [answer.solution[0], answer.solution[1]] });
+        let u = largest_u(problem.samples, cause, u_viscosity)
+            .unwrap_or_else(|| as_relative(problem.samples, cause, &effects, a, b));
+        let shift = [answer.solution[0], answer.solution[1]];
+        // What rounding leaves of an exact zero is no effect.
+        shifts.push(CommonShift { cause, u, shift: [settled(shift[0], a), settled(shift[1], b)] });
     }
     Ok(shifts)
 }
 
-/// Largest standard uncertainty of a common cause among the points: relative, or kelvin for temperature.
-fn largest_u(samples: &[Sample], cause: Cause, u_viscosity: f64) -> f64 {
+/// A shift, or zero where it is below the rounding of the coefficient it moves.
+fn settled(shift: f64, coefficient: f64) -> f64 {
+    if shift.abs() < 1e-12 * coefficient.abs() { 0.0 } else { shift }
+}
+
+/// Largest standard uncertainty of a common cause among the points as stated: relative, kelvin for temperature, pascal
+/// for a zero; nothing where several sources make up the cause.
+fn largest_u(samples: &[Sample], cause: Cause, u_viscosity: f64) -> Option<f64> {
     let of = |wanted: Source, relative_to: fn(&Sample) -> f64| {
         let u = |s: &Sample| {
             let (_, parts, _) = s.sources.iter().find(|(source, _, _)| *source == wanted)?;
             parts.common.map(|u| u / relative_to(s))
         };
-        samples.iter().filter_map(u).fold(0.0, f64::max)
+        samples.iter().filter_map(u).reduce(f64::max)
+    };
+    let any = |sources: &[Source]| {
+        let shared = |s: &Sample| s.sources.iter().any(|(of, parts, _)| sources.contains(of) && parts.common.is_some());
+        samples.iter().any(shared)
     };
     match cause {
-        Cause::Viscosity => u_viscosity,
+        Cause::Viscosity => Some(u_viscosity),
+        Cause::ReferenceFlow if any(&[Source::ReferenceTemperature, Source::ReferencePressure]) => None,
         Cause::ReferenceFlow => of(Source::ReferenceFlow, |s| s.reference_flow.abs()),
         Cause::PressureDrop => of(Source::PressureDrop, |s| s.pressure_drop.abs()),
+        Cause::Density if any(&[Source::RelativeHumidity]) => None,
         Cause::Density => of(Source::LinePressure, |s| s.line_pressure),
         Cause::Temperature => of(Source::Temperature, |_| 1.0),
         Cause::PressureDropZero => of(Source::PressureDrop, |_| 1.0),
-        Cause::Geometry => 0.0,
+        Cause::Geometry => None,
     }
+}
+
+/// The relative error of flow or density that would have the effects of a cause.
+fn as_relative(samples: &[Sample], cause: Cause, effects: &[f64], a: f64, b: f64) -> f64 {
+    let of_unity = |s: &Sample| match cause {
+        Cause::ReferenceFlow => a * s.columns.u + 2.0 * b * s.columns.v,
+        _ => s.columns.y,
+    };
+    samples.iter().zip(effects).map(|(s, effect)| (effect / of_unity(s)).abs()).fold(0.0, f64::max)
 }

@@ -4,9 +4,10 @@ use crate::calibrate::certainty::{budget, uncertainty_rows};
 use crate::calibrate::findings::{self, Run};
 use crate::calibrate::fit::{self, Prior, Solution, UNFIXED_B};
 use crate::calibrate::outcome::{Calibration, CommonEffect, Finding, GeometryRatio, Range, ResidualRow};
-use crate::calibrate::samples::{Sample, Setup};
+use crate::calibrate::samples::{Sample, Setup, Slope, Source};
 use crate::input::points::{Point, Points};
 use crate::input::problem::Problem;
+use crate::input::uncertain::Parts;
 use evenbore::calibration::{Cause, CommonPart, Quality};
 use evenbore::fluid::StoredFluid;
 use evenbore::quantity::Temperature;
@@ -56,7 +57,7 @@ pub struct Verdict {
 /// where others have one.
 pub fn calibrate(points: &Points, order: &Order<'_>) -> Result<Verdict, Problem> {
     let all = samples(points, order)?;
-    let used: Vec<Sample> = all.iter().filter(|s| !order.without.contains(&s.line)).cloned().collect();
+    let used = used(&all, order);
     check_spread(points, &used)?;
     let general = |error: crate::statistics::StatisticsError| Problem::new(&points.file, error.to_string());
     let u_viscosity = f64::from(order.fluid.u_viscosity());
@@ -70,10 +71,19 @@ pub fn calibrate(points: &Points, order: &Order<'_>) -> Result<Verdict, Problem>
     };
     let mut findings = findings::diagnose(&run).map_err(general)?;
     name_other_fluids(&mut findings, points, order);
+    findings.iter_mut().for_each(|finding| finding.message.push('.'));
     let refused = findings.iter().any(|finding| finding.refuses);
-    let record = record(order, &solution, &used, points).map_err(|e| Problem::new(&points.file, e.to_string()))?;
+    let record = record(order, &solution, &used).map_err(|e| Problem::new(&points.file, e.to_string()))?;
     let calibration = outcome(points, order, &run, &all, findings, &record);
     Ok(Verdict { calibration, record: (!refused || order.accept_anyway.is_some()).then_some(record) })
+}
+
+/// The samples that are not left out, by x, so that the order of the file changes no digit.
+fn used(all: &[Sample], order: &Order<'_>) -> Vec<Sample> {
+    let mut used: Vec<Sample> = all.iter().filter(|s| !order.without.contains(&s.line)).cloned().collect();
+    let key = |s: &Sample| (s.columns.x, s.columns.y);
+    used.sort_by(|p, q| key(p).0.total_cmp(&key(q).0).then(key(p).1.total_cmp(&key(q).1)));
+    used
 }
 
 fn nominal(order: &Order<'_>) -> Option<[f64; 2]> {
@@ -88,13 +98,56 @@ fn samples(points: &Points, order: &Order<'_>) -> Result<Vec<Sample>, Problem> {
             let message = "pressure_drop is 0 beside a flow: a point needs a pressure drop";
             return Err(Problem::new(&points.file, message).at_line(point.line));
         }
-        Sample::new(&setup, point).map_err(|refusal| refused(points, point, order.fluid, refusal))
+        let sample = Sample::new(&setup, point).map_err(|refusal| refused(points, point, order.fluid, refusal))?;
+        match senseless(&sample) {
+            Some(message) => Err(Problem::new(&points.file, message).at_line(point.line)),
+            None => Ok(sample),
+        }
     };
     points.points.iter().map(sample).collect()
 }
 
+/// x = mdot/mu beyond which a point is no flow of any element, m.
+const LARGEST_X: f64 = 1e8;
+
+/// Says why the numbers of a point cannot be meant, where they cannot.
+fn senseless(sample: &Sample) -> Option<String> {
+    let x = sample.columns.x;
+    if !(x > 1.0 / LARGEST_X && x < LARGEST_X && sample.columns.y.is_finite()) {
+        let (flow, drop) = (sample.mass_flow, sample.pressure_drop);
+        return Some(format!("a mass flow of {flow:e} kg/s at a pressure drop of {drop:e} Pa is that of no element"));
+    }
+    let too_large = |(source, parts, _): &(Source, Parts, Slope)| {
+        let u = parts.independent.unwrap_or(0.0).max(parts.common.unwrap_or(0.0));
+        let (name, value, unit) = match source {
+            Source::PressureDrop => ("pressure drop", sample.pressure_drop.abs(), " Pa"),
+            Source::LinePressure => ("line pressure", sample.line_pressure, " Pa"),
+            Source::Temperature | Source::ReferenceTemperature => ("temperature", LARGEST_U_TEMPERATURE, " K"),
+            Source::ReferenceFlow => ("reference flow", sample.reference_flow.abs(), " in SI"),
+            Source::ReferencePressure => ("reference pressure", sample.line_pressure, " Pa"),
+            Source::RelativeHumidity => ("relative humidity", 1.0, ""),
+        };
+        let limit =
+            format!("the standard uncertainty of the {name} is {u:e}{unit}, beyond what can be meant, {value:e}");
+        (u > value).then_some(limit)
+    };
+    sample.sources.iter().find_map(too_large)
+}
+
+/// Kelvin beyond which a standard uncertainty of temperature is a slip.
+const LARGEST_U_TEMPERATURE: f64 = 30.0;
+
 /// Why the fluid cannot serve a point, with values and limits.
 fn refused(points: &Points, point: &Point, fluid: &StoredFluid, refusal: Refusal) -> Problem {
+    if let (Some(humidity), Refusal::HUMIDITY_INVALID) = (point.relative_humidity, refusal) {
+        let message = format!(
+            "{refusal}: a relative humidity of {:.1} pct beside {}; it belongs to air and lies within 0 to 100 pct, so \
+             leave the cell empty for other fluids",
+            100.0 * humidity,
+            fluid.name()
+        );
+        return Problem::new(&points.file, message).at_line(point.line);
+    }
     let [t_low, t_high] = fluid.temperature_range().map(Temperature::as_celsius);
     let [p_low, p_high] = fluid.pressure_range().map(|p| p.as_kilopascals());
     let message = format!(
@@ -114,8 +167,9 @@ const LEAST_SPAN: f64 = 1.2;
 fn check_spread(points: &Points, used: &[Sample]) -> Result<(), Problem> {
     let problem = |message: String| Err(Problem::new(&points.file, message));
     if used.len() < 3 {
-        let message = format!("{} points are used: at least 3 are needed to fit, 8 or more to judge a run", used.len());
-        return problem(message);
+        let n = used.len();
+        let are = if n == 1 { "point is" } else { "points are" };
+        return problem(format!("{n} {are} used: at least 3 are needed to fit, 8 or more to judge a run"));
     }
     let (low, high) = span(used);
     if high < LEAST_SPAN * low {
@@ -150,31 +204,36 @@ fn best_fit(used: &[Sample], order: &Order<'_>, u_viscosity: f64) -> crate::stat
     fit::fit(used, u_viscosity, Some(prior))
 }
 
-/// Names the fluids of the same phase with which A would agree with the drawing.
+/// Names the fluids of the same phase with which A and B would agree with the drawing.
 fn name_other_fluids(findings: &mut [Finding], points: &Points, order: &Order<'_>) {
     let Some(finding) = findings.iter_mut().find(|finding| finding.kind == "fluid-mismatch") else { return };
-    let Some([a0, _]) = nominal(order) else { return };
-    let agrees = |fluid: &&StoredFluid| {
-        let setup = Setup { element: &order.element, fluid };
-        let samples: Result<Vec<Sample>, Refusal> = points.points.iter().map(|p| Sample::new(&setup, p)).collect();
-        let Ok(samples) = samples else { return false };
-        let used: Vec<Sample> = samples.into_iter().filter(|s| !order.without.contains(&s.line)).collect();
-        let fitted = fit::fit(&used, 0.0, None);
-        fluid.name() != order.fluid.name() && fitted.is_ok_and(|fit| (fit.a / a0 - 1.0).abs() < 0.03)
-    };
-    let names: Vec<&str> = order.alternatives.iter().copied().filter(agrees).map(StoredFluid::name).collect();
+    let others = order.alternatives.iter().filter(|fluid| fluid.name() != order.fluid.name());
+    let mut names: Vec<(f64, &str)> =
+        others.filter_map(|fluid| Some((distance_from_drawing(points, order, fluid)?, fluid.name()))).collect();
+    names.sort_by(|p, q| p.0.total_cmp(&q.0));
     if !names.is_empty() {
-        finding.message += &format!("; with these fluids A would be within 3 %: {}", names.join(", "));
+        let names: Vec<&str> = names.into_iter().map(|(_, name)| name).take(MOST_NAMES).collect();
+        finding.message += &format!("; fluids that would agree with it, the nearest first: {}", names.join(", "));
     }
 }
 
+/// How far A is from the drawing were the run made on `fluid`; nothing where A or B is beyond the limits.
+fn distance_from_drawing(points: &Points, order: &Order<'_>, fluid: &StoredFluid) -> Option<f64> {
+    let [a0, b0] = nominal(order)?;
+    let setup = Setup { element: &order.element, fluid };
+    let samples: Result<Vec<Sample>, Refusal> = points.points.iter().map(|p| Sample::new(&setup, p)).collect();
+    let fitted = fit::fit(&used(&samples.ok()?, order), 0.0, None).ok()?;
+    let [limit_a, limit_b] = findings::GEOMETRY_LIMITS;
+    let [_, u_b] = fitted.covariance.standard_uncertainties();
+    let (off_a, off_b) = ((fitted.a / a0 - 1.0).abs(), (fitted.b / b0 - 1.0).abs());
+    (off_a < limit_a && off_b < limit_b + 2.0 * u_b / b0).then_some(off_a)
+}
+
+/// Fluids named at most when the declared one does not fit.
+const MOST_NAMES: usize = 3;
+
 /// The record of a fit.
-fn record(
-    order: &Order<'_>,
-    solution: &Solution,
-    used: &[Sample],
-    points: &Points,
-) -> Result<Record, evenbore::error::Error> {
+fn record(order: &Order<'_>, solution: &Solution, used: &[Sample]) -> Result<Record, evenbore::error::Error> {
     let (x_min, x_max) = span(used);
     let [u_a, u_b] = solution.covariance.standard_uncertainties();
     let dof = solution.type_a_degrees_of_freedom();
@@ -191,7 +250,7 @@ fn record(
         common: solution.common.iter().map(part).collect(),
         x_min_m: x_min as f32,
         x_max_m: x_max as f32,
-        temperature_k: Temperature::from_kelvin(mean(used, points, |p| p.temperature) as f32),
+        temperature_k: Temperature::from_kelvin(mean(used, |s| s.temperature) as f32),
     };
     let element = order.element.with_coefficients(solution.a as f32, solution.b.max(0.0) as f32)?;
     let (year, month, day) = order.date;
@@ -204,9 +263,8 @@ fn record(
 }
 
 /// Mean over the used points.
-fn mean(used: &[Sample], points: &Points, of: impl Fn(&Point) -> f64) -> f64 {
-    let values = points.points.iter().filter(|p| used.iter().any(|s| s.line == p.line)).map(of);
-    values.sum::<f64>() / used.len() as f64
+fn mean(used: &[Sample], of: impl Fn(&Sample) -> f64) -> f64 {
+    used.iter().map(of).sum::<f64>() / used.len() as f64
 }
 
 /// Puts together all that was found.
@@ -227,7 +285,7 @@ fn outcome(
     let per_x = run.reynolds_per_x;
     let largest_drop = run.samples.iter().map(|s| s.pressure_drop.abs()).fold(0.0, f64::max);
     let (year, month, day) = order.date;
-    let state = [mean(run.samples, points, |p| p.temperature), mean(run.samples, points, |p| p.line_pressure)];
+    let state = [mean(run.samples, |s| s.temperature), mean(run.samples, |s| s.line_pressure)];
     let dof = solution.type_a_degrees_of_freedom();
     Calibration {
         serial: order.serial.into(),
