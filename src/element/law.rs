@@ -11,8 +11,9 @@
 //! - `Cexp = alpha_ke - kt (1 + n/3) Pr R/(M cp)`: van den Berg, ten Seldam & van der Gulik (1993), and the gas being
 //!   colder than the wall.
 //!
-//! q depends on x, so it is updated three times, always: no branches, the same cost for every reading.
-//! Worst error of the three updates: 0.4 ppm (carbon dioxide at Re 1750 in tubes of L/D 50).
+//! q depends on x, so it is updated five times, always: no branches, the same cost for every reading.
+//! Worst error of the five updates: 0.4 ppm, in tubes of L/D 50 near Re 1800 where the gas loses 45 % of its pressure;
+//! three updates leave 1.3 ppm while it loses less than 5 %, and 56 ppm there.
 
 use super::geometry::Element;
 use crate::fluid::properties::PropertiesAt;
@@ -22,7 +23,7 @@ use crate::math::Real;
 const SLIP_COEFFICIENT: f64 = 1.016;
 
 /// Updates of q.
-const UPDATES: usize = 3;
+const UPDATES: usize = 5;
 
 /// Rounds of the inverse; each gains at least a factor of four, see [`Prepared::pressure_drop`].
 const INVERSE_ROUNDS: usize = 16;
