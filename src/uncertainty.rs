@@ -11,7 +11,7 @@
 //!
 //! for the volume flow Q at line conditions. Against numerical derivatives: within 0.9 % of the largest of them, each
 //! taken per relative change, and temperature within 1.6 %, reached by carbon dioxide (asserted in
-//! `tests/accuracy_uncertainty.rs`; left out are q's answer to x and how Z and Cexp change with temperature).
+//! `tests/accuracy_uncertainty.rs` up to a third of the line pressure lost; left out are q's answer to x and how Z and Cexp change with temperature).
 
 use crate::calibration::{Cause, Quality};
 use crate::conditions::State;

@@ -25,8 +25,9 @@ const SLIP_COEFFICIENT: f64 = 1.016;
 /// Updates of q.
 const UPDATES: usize = 5;
 
-/// Rounds of the inverse; each gains at least a factor of four, see [`Prepared::pressure_drop`].
-const INVERSE_ROUNDS: usize = 16;
+/// Rounds of the inverse; each gains a factor of four or more, and two where a gas that loses half its pressure nears the
+/// largest flow it can have, see [`Prepared::pressure_drop`].
+const INVERSE_ROUNDS: usize = 32;
 
 /// The law at one temperature, line pressure and fluid.
 #[derive(Debug, Clone, Copy)]
