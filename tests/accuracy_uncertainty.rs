@@ -118,6 +118,10 @@ fn sensitivities_are_derivatives_of_the_law() {
             }
         }
     }
+    for ((errors, name), limit) in errors.iter().zip(names).zip(tolerance::SENSITIVITIES) {
+        assert!(errors.count > 500, "{}", errors.count);
+        errors.judge(&format!("sensitivity to {name}"), limit);
+    }
 }
 
 /// Normal deviates from a fixed seed: a 64-bit congruence behind Box and Muller's transform.
