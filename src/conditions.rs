@@ -33,6 +33,9 @@ impl Conditions {
 
     /// The pressure drop that drives a mass flow: the inverse of [`Conditions::sample`].
     ///
+    /// Accuracy: 2e-6 of the drop while a gas loses less than 30 % of its pressure, 2e-5 to 50 %, where a flow rounded
+    /// to single precision says less of the drop behind it (asserted in `tests/properties.rs`).
+    ///
     /// # Errors
     /// Refuses a mass flow that is not finite, or that no outlet pressure within the fluid's table can drive.
     pub fn pressure_drop(&self, mass_flow: MassFlow) -> Result<PressureDrop, Refusal> {

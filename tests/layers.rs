@@ -215,7 +215,8 @@ fn every_file_of_the_library_is_part_of_the_walk() {
     let src = Path::new(env!("CARGO_MANIFEST_DIR")).join("src");
     let mut on_disk = rust_files(&src);
     let mut walked: Vec<PathBuf> = library().into_iter().map(|file| file.disk).collect();
-    (on_disk.sort(), walked.sort());
+    on_disk.sort();
+    walked.sort();
     assert_eq!(on_disk, walked);
 }
 

@@ -4,7 +4,9 @@ mod common;
 
 use common::{Errors, constant_liquid, number, rows, tolerance};
 use evenbore::conditions::Conditions;
+use evenbore::double;
 use evenbore::element::ducts::concentric_annulus;
+use evenbore::fluid::catalogue::HELIUM;
 use evenbore::quantity::{AbsolutePressure, Length, MassFlow, PressureDrop, Temperature};
 use evenbore::{Element, Meter, Status};
 use std::f64::consts::PI;
@@ -203,4 +205,20 @@ fn stanton_and_pannell_1914_thick_oil_of_greater_precision() {
     }
     assert_eq!(errors.count, 11);
     errors.judge("Stanton & Pannell, thick oil, printed viscosity", tolerance::MEASURED_OIL[1]);
+}
+
+#[test]
+fn slip_is_that_of_diffusely_reflecting_walls() {
+    // s = 4 xi/R in tubes and 3 xi/h between plates of half gap h; xi = 1.016 mu sqrt(2 R T/M)/pm (Sharipov 2004).
+    let tubes = Element::round_tubes(4, metres(2e-4), metres(0.1)).unwrap();
+    let plates = Element::parallel_plates(metres(1e-4), metres(0.4), metres(0.06)).unwrap();
+    for (element, factor, half) in [(tubes, 4.0, 1e-4), (plates, 3.0, 5e-5)] {
+        let (t, p, drop) = (293.15, 8e4, 200.0);
+        let conditions = double::Conditions::new(&element, HELIUM.fluid(), t, p, None).unwrap();
+        let (mean, molar_mass) = (p - drop / 2.0, f64::from(HELIUM.fluid().molar_mass()));
+        let speed = (2.0 * 8.314_462_618_153_24 * t / molar_mass).sqrt();
+        let want = factor * 1.016 * conditions.viscosity(mean) * speed / (mean * half);
+        let got = conditions.flow(drop).unwrap().slip;
+        assert!((got / want - 1.0).abs() <= tolerance::SLIP, "{got} against {want}");
+    }
 }
