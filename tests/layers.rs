@@ -189,7 +189,6 @@ fn files_of_the_library_import_only_from_files_above_them() {
 }
 
 #[test]
-#[ignore = "the declarations in the bench's report.rs and statistics.rs do not stand in order yet"]
 fn files_of_the_bench_import_only_from_files_above_them() {
     let files = bench();
     assert!(files.len() > 30, "only {} files were found", files.len());

@@ -4,16 +4,25 @@
 //! `report/page.html` with every value escaped; figures are drawn by the modules below and hold no text of the user's
 //! that has not been escaped.
 
-mod axis;
-mod characteristic;
-mod figure;
-mod key;
-mod label;
-mod numbers;
-mod range;
-mod residuals;
-mod tables;
-mod words;
+mod numbers; // rounding and typography of numbers
+
+mod axis; // scales and ticks
+
+mod figure; // SVG primitives
+
+mod key; // keys of figures
+
+mod label; // labels that keep clear of each other
+
+mod characteristic; // figure 1
+
+mod residuals; // figure 2
+
+mod range; // figure 3
+
+mod words; // sentences
+
+mod tables; // rows of the tables
 
 use crate::calibrate::outcome::{Calibration, Finding, UncertaintyRow};
 use figure::Rendition;
