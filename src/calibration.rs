@@ -102,15 +102,17 @@ impl Quality {
     pub fn nominal(a: f32, b: f32) -> Self {
         let [limit_a, limit_b] = NOMINAL_LIMITS;
         let parts = [(limit_a * RECTANGULAR, 0.0), (0.0, limit_b * RECTANGULAR * (b / a))];
+        let mut common = Vec::new();
+        for (effect_a, effect_b_m) in parts {
+            // There is room for both; collecting them would leave a panic in firmware optimised for size.
+            let _ = common.push(CommonPart { cause: Cause::Geometry, effect_a, effect_b_m });
+        }
         Self {
             u_a: 0.0,
             u_b_m: 0.0,
             correlation: 0.0,
             degrees_of_freedom: 0.0,
-            common: parts
-                .into_iter()
-                .map(|(effect_a, effect_b_m)| CommonPart { cause: Cause::Geometry, effect_a, effect_b_m })
-                .collect(),
+            common,
             x_min_m: 0.0,
             x_max_m: 0.0,
             temperature_k: Temperature::from_celsius(20.0),

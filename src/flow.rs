@@ -65,8 +65,8 @@ impl<'a> Meter<'a> {
     /// Names the field of the element or fluid that makes no sense.
     pub fn nominal(element: Element, fluid: &'a StoredFluid) -> Result<Self, Error> {
         let quality = Quality::nominal(element.a, element.b);
-        let meter = Self::calibrated(element, fluid, quality)?;
-        Ok(Self { calibrated_on_this_fluid: false, standing: Status::UNCALIBRATED, ..meter })
+        check(&element, fluid, &quality)?;
+        Ok(Self::of_checked(element, fluid, quality, false, Status::UNCALIBRATED))
     }
 
     /// A calibrated meter, used on the fluid it was calibrated on.
@@ -74,23 +74,32 @@ impl<'a> Meter<'a> {
     /// # Errors
     /// Names the field of the element, fluid or calibration that makes no sense.
     pub fn calibrated(element: Element, fluid: &'a StoredFluid, quality: Quality) -> Result<Self, Error> {
-        element.check()?;
-        fluid.check()?;
-        quality.check()?;
+        check(&element, fluid, &quality)?;
+        Ok(Self::of_checked(element, fluid, quality, true, Status::empty()))
+    }
+
+    /// A meter of parts that were found to make sense.
+    pub(crate) fn of_checked(
+        element: Element,
+        fluid: &'a StoredFluid,
+        quality: Quality,
+        calibrated_on_this_fluid: bool,
+        standing: Status,
+    ) -> Self {
         let reference = ReferenceConditions::DIN_1343;
-        Ok(Self {
+        Self {
             element,
             channels: Channels::new(&element),
             fluid,
             quality,
-            calibrated_on_this_fluid: true,
+            calibrated_on_this_fluid,
             trims: Trims::NONE,
             sensors: SensorUncertainty::COMMON,
             reference,
             standard_volume: standard_volume(fluid, &reference),
-            standing: Status::empty(),
+            standing,
             arithmetic: Arithmetic::Single,
-        })
+        }
     }
 
     /// The same meter carrying another fluid.
@@ -174,17 +183,22 @@ impl<'a> Meter<'a> {
     pub fn flow_with(&self, reading: &Reading, sensors: &SensorUncertainty) -> Result<Flow, Refusal> {
         let reading = self.trims.apply(reading);
         reading.check()?;
-        // Borrowed, because moving what was prepared would double the stack.
-        let conditions = &self.conditions(reading.temperature, reading.line_pressure, reading.relative_humidity);
-        let conditions = conditions.as_ref().map_err(|refusal| *refusal)?;
-        let solution = conditions.solve(reading.pressure_drop)?;
+        // Matched where it stands, since moving what was prepared would double the stack.
+        match &self.conditions(reading.temperature, reading.line_pressure, reading.relative_humidity) {
+            Ok(conditions) => self.answer(conditions, &reading, sensors),
+            Err(refusal) => Err(*refusal),
+        }
+    }
+
+    #[inline(never)] // its stack then lies where that of `conditions` lay, not on top of it
+    fn answer(&self, at: &Conditions, reading: &Reading, sensors: &SensorUncertainty) -> Result<Flow, Refusal> {
+        let solution = at.solve(reading.pressure_drop)?;
+        let sensitivities = at.sensitivities(&solution, reading);
+        let uncertainty = self.uncertainty(at, &sensitivities, reading, sensors);
         let sample = match self.arithmetic {
-            Arithmetic::Single => conditions.interpret(&solution),
-            Arithmetic::Curve => by_curve(conditions, conditions.interpret(&solution), reading.pressure_drop)?,
+            Arithmetic::Single => at.interpret(&solution),
+            Arithmetic::Curve => by_curve(at, at.interpret(&solution), reading.pressure_drop)?,
         };
-        let sensitivities = conditions.sensitivities(&solution, &reading);
-        let u_viscosity = [self.u_viscosity(reading.temperature), conditions.u_viscosity_of_water()];
-        let uncertainty = self.uncertainty(&sensitivities, sensors, &reading, u_viscosity);
         Ok(Flow { sample, sensitivities, uncertainty })
     }
 
@@ -210,18 +224,12 @@ impl<'a> Meter<'a> {
         })
     }
 
-    fn uncertainty(
-        &self,
-        s: &Sensitivities,
-        sensors: &SensorUncertainty,
-        reading: &Reading,
-        u_viscosity: [f32; 2],
-    ) -> Uncertainty {
-        let (drop, p) = (reading.pressure_drop.as_pascals(), reading.line_pressure.as_pascals());
+    fn uncertainty(&self, at: &Conditions, s: &Sensitivities, r: &Reading, sensors: &SensorUncertainty) -> Uncertainty {
+        let u_viscosity = [self.u_viscosity(r.temperature), at.u_viscosity_of_water()];
         Uncertainty {
             fit: fit_part(s, &self.quality),
             common: common_part(s, &self.quality, u_viscosity, self.calibrated_on_this_fluid),
-            sensors: sensor_part(s, sensors, drop, p),
+            sensors: sensor_part(s, sensors, r.pressure_drop.as_pascals(), r.line_pressure.as_pascals()),
         }
     }
 
@@ -237,7 +245,14 @@ impl<'a> Meter<'a> {
     }
 }
 
+fn check(element: &Element, fluid: &StoredFluid, quality: &Quality) -> Result<(), Error> {
+    element.check()?;
+    fluid.check()?;
+    quality.check()
+}
+
 /// Dry volume of a kilogram at reference conditions, m3/kg; 0 where the fluid's table does not reach.
+#[inline(never)] // three callers, none in a hurry
 fn standard_volume(fluid: &StoredFluid, reference: &ReferenceConditions) -> f32 {
     let (t, p) = (reference.temperature.as_kelvin(), reference.pressure.as_pascals());
     if outside(fluid, t, p).is_empty() { 1.0 / PropertiesAt::new(fluid, t).density(p) } else { 0.0 }

@@ -9,17 +9,16 @@ mod layout; // how each part is written and read back
 pub use layout::RECORD_LENGTH;
 
 use crate::calibration::Quality;
-use crate::element::Element;
+use crate::element::{Element, Shape};
 use crate::error::{Error, within};
 use crate::flow::Meter;
 use crate::flow_curve::Arithmetic;
-use crate::fluid::StoredFluid;
-use crate::fluid::stored::Name;
+use crate::fluid::{Phase, StoredFluid};
 use crate::reading::{SensorUncertainty, Trims};
 use crate::reference::ReferenceConditions;
 use crate::status::Status;
 use heapless::String;
-use layout::{Reader, Writer, numbers_of};
+use layout::{Reader, Writer, choice, numbers_of};
 
 /// Longest serial number.
 pub const SERIAL_LENGTH: usize = 16;
@@ -113,7 +112,7 @@ impl Record {
         ReferenceConditions::new(self.reference.temperature, self.reference.pressure)?;
         self.quality.check()?;
         self.element.check()?;
-        Name::checked(self.fluid.name())?;
+        self.fluid.name.check()?;
         self.fluid.check()
     }
 
@@ -124,11 +123,10 @@ impl Record {
     pub fn meter(&self) -> Result<Meter<'_>, Error> {
         self.check()?;
         let standing = if self.reason.is_empty() { Status::empty() } else { Status::REFUSED_RUN };
-        Ok(Meter::calibrated(self.element, &self.fluid, self.quality.clone())?
+        Ok(Meter::of_checked(self.element, &self.fluid, self.quality.clone(), true, standing)
             .with_sensors(self.trims, self.sensors)?
             .with_reference(self.reference)
-            .with_arithmetic(self.arithmetic)
-            .with_standing(standing))
+            .with_arithmetic(self.arithmetic))
     }
 
     /// Writes the record's bytes.
@@ -170,9 +168,12 @@ impl Record {
             return Err(length);
         }
         check_sum(bytes)?;
-        let record = read(&mut r)?;
-        record.check()?;
-        Ok(record)
+        // Checked where it stands, since a record is too large to be moved about on a small stack.
+        let record = read(&mut r);
+        match &record {
+            Ok(sound) => sound.check().and(record),
+            Err(_) => record,
+        }
     }
 
     /// The checksum that stands at the end of the record's bytes.
@@ -195,26 +196,24 @@ fn check_sum(bytes: &[u8]) -> Result<(), Error> {
 /// The fields in the order of the layout, unchecked.
 fn read(r: &mut Reader<'_>) -> Result<Record, Error> {
     let serial = r.text("serial")?;
-    let (date, events) = (u32::from_le_bytes(r.need()?), u32::from_le_bytes(r.need()?));
-    let [arithmetic, shape, phase, _] = r.need()?;
+    let (date, events) = (u32::from_le_bytes(r.bytes()), u32::from_le_bytes(r.bytes()));
+    let [arithmetic, shape, phase, _] = r.bytes();
+    let arithmetic = choice("arithmetic", &[Arithmetic::Single, Arithmetic::Curve], arithmetic)?;
+    let shape = choice("shape", &[Shape::RoundTubes, Shape::ParallelPlates, Shape::Other], shape)?;
+    let phase = choice("phase", &[Phase::Gas, Phase::Liquid], phase)?;
     let reason = r.text("reason")?;
-    let (trims, sensors, reference) = r.settings()?;
+    let (trims, sensors, reference) = r.settings();
     Ok(Record {
         serial,
         date,
         events,
-        arithmetic: arithmetic_of(arithmetic)?,
+        arithmetic,
         reason,
         trims,
         sensors,
         reference,
         quality: r.quality()?,
-        element: r.element(shape)?,
-        fluid: r.fluid(phase)?,
+        element: r.element(shape),
+        fluid: r.fluid(phase),
     })
-}
-
-fn arithmetic_of(code: u8) -> Result<Arithmetic, Error> {
-    let known = [Arithmetic::Single, Arithmetic::Curve].into_iter().find(|known| *known as u8 == code);
-    known.ok_or(Error::UnknownCode { field: "arithmetic", code })
 }

@@ -26,6 +26,8 @@ pub(crate) const LIQUID_SCALE: f64 = 0.01;
 /// Longest fluid name, in bytes.
 pub const NAME_LENGTH: usize = 24;
 
+const BAD_NAME: Error = Error::BadText { field: "fluid name", most: NAME_LENGTH };
+
 /// A fluid's name: 1 to 24 printable ASCII characters, padded with zeros.
 #[derive(Clone, Copy, PartialEq, Eq)]
 pub struct Name {
@@ -50,17 +52,26 @@ impl Name {
     /// # Errors
     /// Text that is empty, longer than 24 bytes or not printable ASCII.
     pub fn checked(text: &str) -> Result<Self, Error> {
-        let printable = text.bytes().all(|c| (b' '..=b'~').contains(&c));
-        if text.is_empty() || text.len() > NAME_LENGTH || !printable {
-            return Err(Error::BadText { field: "fluid name", most: NAME_LENGTH });
-        }
-        Ok(Self::new(text))
+        let name = Self::new(text);
+        name.check()?;
+        if name.text().len() == text.len() { Ok(name) } else { Err(BAD_NAME) }
+    }
+
+    /// Accepts a name that is not empty and printable ASCII up to its padding.
+    pub(crate) fn check(&self) -> Result<(), Error> {
+        let printable = self.text().iter().all(|c| (b' '..=b'~').contains(c));
+        if self.text().is_empty() || !printable { Err(BAD_NAME) } else { Ok(()) }
     }
 
     /// The name as text.
     pub fn as_str(&self) -> &str {
+        core::str::from_utf8(self.text()).unwrap_or("")
+    }
+
+    /// The bytes before the padding.
+    fn text(&self) -> &[u8] {
         let length = self.bytes.iter().position(|&c| c == 0).unwrap_or(NAME_LENGTH);
-        self.bytes.get(..length).and_then(|b| core::str::from_utf8(b).ok()).unwrap_or("")
+        self.bytes.get(..length).unwrap_or(&[])
     }
 }
 

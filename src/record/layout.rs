@@ -4,7 +4,7 @@ use crate::calibration::{Cause, CommonPart, MOST_COMMON_PARTS, Quality};
 use crate::element::geometry::ShapeConstants;
 use crate::element::{Element, Shape};
 use crate::error::Error;
-use crate::fluid::stored::{COARSE_NODES, Curve, FINE_NODES, NAME_LENGTH, Name};
+use crate::fluid::stored::{Curve, Name};
 use crate::fluid::{Phase, StoredFluid};
 use crate::quantity::{AbsolutePressure, Temperature};
 use crate::reading::{SensorUncertainty, Trims};
@@ -106,36 +106,31 @@ impl Reader<'_> {
         self.at += N;
         Some(*part)
     }
-    pub fn need<const N: usize>(&mut self) -> Result<[u8; N], Error> {
-        self.take().ok_or(Error::WrongLength { found: self.bytes.len(), expected: RECORD_LENGTH })
+    /// The next bytes; the length of the whole was checked, so they are there.
+    pub fn bytes<const N: usize>(&mut self) -> [u8; N] {
+        self.take().unwrap_or([0; N])
     }
-    pub fn number(&mut self) -> Result<f32, Error> {
-        Ok(f32::from_le_bytes(self.need()?))
-    }
-    pub fn numbers<const N: usize>(&mut self) -> Result<[f32; N], Error> {
-        let mut numbers = [0.0; N];
-        for number in &mut numbers {
-            *number = self.number()?;
+    #[inline(never)] // most of a record is numbers
+    pub fn fill(&mut self, numbers: &mut [f32]) {
+        for number in numbers {
+            *number = f32::from_le_bytes(self.bytes());
         }
-        Ok(numbers)
+    }
+    pub fn numbers<const N: usize>(&mut self) -> [f32; N] {
+        let mut numbers = [0.0; N];
+        self.fill(&mut numbers);
+        numbers
     }
     pub fn text<const N: usize>(&mut self, field: &'static str) -> Result<String<N>, Error> {
-        let place = self.need::<N>()?;
-        let length = place.iter().position(|&c| c == 0).unwrap_or(N);
-        let bad = Error::BadText { field, most: N };
-        let text = place.get(..length).and_then(|b| core::str::from_utf8(b).ok()).ok_or(bad)?;
-        String::try_from(text).map_err(|_| bad)
-    }
-    pub fn curve<const NODES: usize>(&mut self) -> Result<Curve<NODES>, Error> {
-        let mut nodes = [[0.0; 2]; NODES];
-        for node in &mut nodes {
-            *node = self.numbers()?;
+        let mut text = String::new();
+        for code in self.bytes::<N>().into_iter().take_while(|&code| code != 0) {
+            text.push(char::from(code)).map_err(|_| Error::BadText { field, most: N })?;
         }
-        Ok(Curve { nodes })
+        Ok(text)
     }
-    pub fn settings(&mut self) -> Result<(Trims, SensorUncertainty, ReferenceConditions), Error> {
+    pub fn settings(&mut self) -> (Trims, SensorUncertainty, ReferenceConditions) {
         let [zero, gain, offset_t, offset_p, drop_pa, drop_rel, t, p_pa, p_rel, humidity, ref_t, ref_p] =
-            self.numbers()?;
+            self.numbers();
         let trims = Trims {
             pressure_drop_zero_pa: zero,
             pressure_drop_gain: gain,
@@ -154,51 +149,60 @@ impl Reader<'_> {
             temperature: Temperature::from_kelvin(ref_t),
             pressure: AbsolutePressure::from_pascals(ref_p),
         };
-        Ok((trims, sensors, reference))
+        (trims, sensors, reference)
     }
     pub fn quality(&mut self) -> Result<Quality, Error> {
-        let [u_a, u_b_m, correlation, degrees_of_freedom, x_min_m, x_max_m, t] = self.numbers()?;
-        let causes = self.need::<MOST_COMMON_PARTS>()?;
-        self.need::<2>()?;
+        let [u_a, u_b_m, correlation, degrees_of_freedom, x_min_m, x_max_m, t] = self.numbers();
+        let causes = self.bytes::<MOST_COMMON_PARTS>();
+        self.bytes::<2>();
         let mut common = Vec::new();
         for code in causes {
-            let [effect_a, effect_b_m] = self.numbers()?;
+            let [effect_a, effect_b_m] = self.numbers();
             if code == u8::MAX {
                 continue;
             }
-            let cause = *Cause::ALL.get(usize::from(code)).ok_or(Error::UnknownCode { field: "cause", code })?;
+            let cause = choice("cause", &Cause::ALL, code)?;
             let part = CommonPart { cause, effect_a, effect_b_m };
             common.push(part).map_err(|_| Error::TooMany { field: "common", most: MOST_COMMON_PARTS })?;
         }
         let temperature_k = Temperature::from_kelvin(t);
         Ok(Quality { u_a, u_b_m, correlation, degrees_of_freedom, common, x_min_m, x_max_m, temperature_k })
     }
-    pub fn element(&mut self, shape: u8) -> Result<Element, Error> {
-        let shapes = [Shape::RoundTubes, Shape::ParallelPlates, Shape::Other];
-        let unknown = Error::UnknownCode { field: "shape", code: shape };
-        let shape = *shapes.get(usize::from(shape)).ok_or(unknown)?;
-        let [a, b, open_area, hydraulic_diameter, length, expansion, reference_temperature] = self.numbers()?;
-        let [friction_reynolds, kinetic_loss, kinetic_energy_factor, thermal_factor] = self.numbers()?;
-        let entrance = self.numbers()?;
+    pub fn element(&mut self, shape: Shape) -> Element {
+        let [a, b, open_area, hydraulic_diameter, length, expansion, reference_temperature] = self.numbers();
+        let [friction_reynolds, kinetic_loss, kinetic_energy_factor, thermal_factor] = self.numbers();
+        let entrance = self.numbers();
         let constants =
             ShapeConstants { friction_reynolds, kinetic_loss, kinetic_energy_factor, thermal_factor, entrance };
-        Ok(Element { shape, constants, a, b, open_area, hydraulic_diameter, length, expansion, reference_temperature })
+        Element { shape, constants, a, b, open_area, hydraulic_diameter, length, expansion, reference_temperature }
     }
-    pub fn fluid(&mut self, phase: u8) -> Result<StoredFluid, Error> {
-        let phases = [Phase::Gas, Phase::Liquid];
-        let unknown = Error::UnknownCode { field: "phase", code: phase };
-        Ok(StoredFluid {
-            name: Name { bytes: self.need::<NAME_LENGTH>()? },
-            phase: *phases.get(usize::from(phase)).ok_or(unknown)?,
-            molar_mass: self.number()?,
-            temperature_range: self.numbers()?,
-            pressure_range: self.numbers()?,
-            u_viscosity: self.number()?,
-            u_viscosity_ratio: self.number()?,
-            viscosity: self.curve::<FINE_NODES>()?,
-            viscosity_pressure: [self.curve::<COARSE_NODES>()?, self.curve()?],
-            density_pressure: [self.curve()?, self.curve()?, self.curve()?],
-            extra: self.curve()?,
-        })
+    pub fn fluid(&mut self, phase: Phase) -> StoredFluid {
+        let name = Name { bytes: self.bytes() };
+        let [molar_mass, t_low, t_high, p_low, p_high, u_viscosity, u_viscosity_ratio] = self.numbers();
+        let (fine, coarse) = (Curve::constant(0.0), Curve::constant(0.0));
+        let mut fluid = StoredFluid {
+            name,
+            phase,
+            molar_mass,
+            temperature_range: [t_low, t_high],
+            pressure_range: [p_low, p_high],
+            u_viscosity,
+            u_viscosity_ratio,
+            viscosity: fine,
+            viscosity_pressure: [coarse; 2],
+            density_pressure: [coarse; 3],
+            extra: coarse,
+        };
+        self.fill(fluid.viscosity.nodes.as_flattened_mut());
+        for curve in fluid.viscosity_pressure.iter_mut().chain(&mut fluid.density_pressure) {
+            self.fill(curve.nodes.as_flattened_mut());
+        }
+        self.fill(fluid.extra.nodes.as_flattened_mut());
+        fluid
     }
+}
+
+/// The choice that a code stands for.
+pub(super) fn choice<T: Copy>(field: &'static str, choices: &[T], code: u8) -> Result<T, Error> {
+    choices.get(usize::from(code)).copied().ok_or(Error::UnknownCode { field, code })
 }

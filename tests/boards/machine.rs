@@ -46,7 +46,8 @@ pub fn machines() -> Vec<Machine> {
 /// All machines when they are asked for and can run; none, said plainly, when they are not asked for.
 pub fn requested() -> Vec<Machine> {
     if !blessing() && env::var_os("EVENBORE_BOARDS").is_none_or(|v| v != "1") {
-        // Written past the capture of test output: what did not run must be seen.
+        // Written past the capture of test output, which `eprintln!` is not: what did not run must be seen.
+        #[allow(clippy::explicit_write)]
         writeln!(std::io::stderr(), "boards: emulated machines NOT run; EVENBORE_BOARDS=1 runs them").unwrap();
         return Vec::new();
     }
@@ -86,9 +87,19 @@ impl Machine {
     /// # Errors
     /// What cargo wrote.
     pub fn build(&self, arguments: &[&str]) -> Result<(), String> {
+        self.build_at("3", arguments)
+    }
+
+    /// Builds the machine's programs in release at an optimisation level.
+    ///
+    /// # Errors
+    /// What cargo wrote.
+    pub fn build_at(&self, level: &str, arguments: &[&str]) -> Result<(), String> {
+        let target = folder().join(if level == "3" { "target".to_owned() } else { format!("target/{level}") });
         let output = Command::new(env::var_os("CARGO").unwrap_or("cargo".into()))
             .current_dir(folder()) // or cargo ignores the folder's config
-            .env("CARGO_TARGET_DIR", folder().join("target"))
+            .env("CARGO_TARGET_DIR", target)
+            .env("CARGO_PROFILE_RELEASE_OPT_LEVEL", level)
             .env_remove("RUSTFLAGS")
             .env_remove("CARGO_ENCODED_RUSTFLAGS")
             .args(["build", "--release", "--locked", "--target", &self.target])
