@@ -7,6 +7,7 @@
 mod layout; // the bytes
 
 pub use layout::RECORD_LENGTH;
+pub(crate) use layout::checksum;
 
 use crate::calibration::Quality;
 use crate::element::Element;
