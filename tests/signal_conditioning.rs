@@ -71,6 +71,10 @@ fn windows_drop_the_oldest_and_leave_out_what_is_no_number() {
     }
     assert_eq!((window.len(), window.median(), window.mean()), (3, Some(kg(2.0)), Some(kg(3.0))));
     assert_eq!(window.variance(), Some(7.0));
+    for value in [10_001.0, 10_002.0, 10_003.0] {
+        window.push(kg(value));
+    }
+    assert_eq!(window.variance(), Some(1.0), "the mean is taken off before squaring");
     window.push(kg(f32::MAX));
     window.push(kg(f32::MAX));
     assert_eq!(window.mean(), None, "the sum is beyond the number range");

@@ -90,7 +90,9 @@ fn thermistor_passes_through_its_points_and_agrees_with_double_precision() {
     assert!(Thermistor::from_points([cold, cold, warm].map(at)).is_err(), "two equal points");
     let ptc = [(100.0, 0.0), (110.0, 25.0), (130.0, 70.0)];
     assert!(Thermistor::from_points(ptc.map(at)).is_err(), "rises with temperature");
-    assert_eq!(sensor.temperature(Resistance::from_ohms(500.0)), Err(Fault::Short));
+    let reach = [585.0, 97_900.0].map(|ohms| sensor.temperature(Resistance::from_ohms(ohms)).is_ok());
+    assert_eq!(reach, [true, true], "three times beyond the points");
+    assert_eq!(sensor.temperature(Resistance::from_ohms(583.0)), Err(Fault::Short));
     assert_eq!(sensor.temperature(Resistance::from_ohms(98_000.0)), Err(Fault::Open));
     assert_eq!(sensor.temperature(Resistance::from_ohms(f32::NAN)), Err(Fault::Invalid));
 }
