@@ -39,6 +39,8 @@ pub enum Error {
     },
     /// The bytes are not a record: the mark at their start is another.
     NotARecord,
+    /// The bytes are not totals: the mark at their start is another.
+    NotTotals,
     /// The record is of a version this code does not read.
     UnknownVersion {
         /// The version found.
@@ -79,6 +81,7 @@ impl fmt::Display for Error {
             Self::BadText { field, most } => write!(f, "{field} must be 1 to {most} printable ASCII characters"),
             Self::TooMany { field, most } => write!(f, "{field}: at most {most} entries"),
             Self::NotARecord => write!(f, "not a calibration record"),
+            Self::NotTotals => write!(f, "not stored totals"),
             Self::UnknownVersion { found, newest } => {
                 write!(f, "record version {found}; this code reads versions 1 to {newest}")
             }

@@ -35,6 +35,16 @@ pub mod flow; // the walk
 
 pub mod record; // the calibration as bytes
 
+pub mod sensor; // words, ratios and resistances to pressures and temperatures
+
+pub mod conditioning; // zero, windows, damping, cut-off, age: from samples to a steady flow
+
+pub mod health; // what is wrong, in the categories of NE 107, and whether the flow may be shown
+
+pub mod total; // volumes and masses since the beginning, in whole sub-units
+
+pub mod output; // current loop, pulses, alarms, simulation
+
 pub mod double; // the same kernels in double precision, for the bench
 
 #[doc(inline)]

@@ -97,6 +97,19 @@ impl Real for f64 {
     }
 }
 
+/// Share `1 - exp(-x)` of its way that a first-order lag has gone after `x` time constants; x >= 0.
+///
+/// Through `expm1`: the difference `1 - exp(-x)` would leave, at 1000 samples per time constant, an error of 1.4e-4 in
+/// the share with `micromath`'s `exp` (1.4e-7 on 1) and of 3e-5 with a correctly rounded one.
+pub(crate) fn approached(x: f32) -> f32 {
+    -libm::expm1f(-x)
+}
+
+/// Natural logarithm in single precision.
+pub(crate) fn logarithm(value: f32) -> f32 {
+    libm::logf(value)
+}
+
 /// Natural logarithm in double precision, for tables that are built once.
 pub(crate) fn ln(value: f64) -> f64 {
     libm::log(value)

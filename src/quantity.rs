@@ -12,6 +12,21 @@
 //! assert_eq!(VolumeFlow::from_litres_per_minute(60.0).as_cubic_metres_per_second(), 0.001);
 //! ```
 
+/// A quantity that is one number in SI units; implemented by the types of this module and by nothing else.
+///
+/// It lets a sensor, a window or an output be written once and still take and give its own quantity only.
+pub trait Quantity: Copy + PartialOrd + sealed::Sealed {
+    /// From a value in the SI unit.
+    fn from_si(value: f32) -> Self;
+    /// The value in the SI unit.
+    fn as_si(self) -> f32;
+}
+
+mod sealed {
+    /// Keeps [`super::Quantity`] to this module.
+    pub trait Sealed {}
+}
+
 /// Declares a quantity: its SI constructor and accessor, then a row for each further unit.
 ///
 /// `times n` is a unit of n SI units, `per n` one of which n make an SI unit; both factors are exact in f32 or the
@@ -44,6 +59,17 @@ macro_rules! quantity {
                     quantity!(@as $how self.0, $factor)
                 }
             )*
+        }
+
+        impl sealed::Sealed for $name {}
+
+        impl Quantity for $name {
+            fn from_si(value: f32) -> Self {
+                Self(value)
+            }
+            fn as_si(self) -> f32 {
+                self.0
+            }
         }
     };
     (@from times $v:expr, $f:literal) => { $v * $f };
@@ -163,4 +189,16 @@ quantity! {
     /// Relative humidity, a fraction 0 to 1 of saturation over water.
     RelativeHumidity, "the fraction of saturation", from_fraction, as_fraction;
     "percent", from_percent, as_percent, per 1e2;
+}
+
+quantity! {
+    /// Electrical resistance, R.
+    Resistance, "ohms", from_ohms, as_ohms;
+    "kilohms", from_kilohms, as_kilohms, times 1e3;
+}
+
+quantity! {
+    /// Electric current, I.
+    Current, "amperes", from_amperes, as_amperes;
+    "milliamperes", from_milliamperes, as_milliamperes, per 1e3;
 }

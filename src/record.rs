@@ -29,6 +29,11 @@ const MARK: [u8; 4] = *b"EVBR";
 const VERSION: u16 = 1;
 const CRC: crc::Crc<u32> = crc::Crc::<u32>::new(&crc::CRC_32_ISO_HDLC);
 
+/// CRC-32 (ISO 3309, IEEE 802.3) of `bytes`, for all that the library stores.
+pub(crate) fn checksum(bytes: &[u8]) -> u32 {
+    CRC.checksum(bytes)
+}
+
 /// A calibration record.
 ///
 /// ```
@@ -144,7 +149,7 @@ impl Record {
         w.quality(&self.quality);
         w.element(&self.element);
         w.fluid(&self.fluid);
-        let sum = CRC.checksum(w.written());
+        let sum = checksum(w.written());
         w.put(&sum.to_le_bytes());
     }
 
@@ -189,7 +194,7 @@ fn check_sum(bytes: &[u8]) -> Result<(), Error> {
     let Some((body, stored)) = bytes.split_last_chunk::<4>() else {
         return Err(Error::WrongLength { found: bytes.len(), expected: RECORD_LENGTH });
     };
-    let (computed, stored) = (CRC.checksum(body), u32::from_le_bytes(*stored));
+    let (computed, stored) = (checksum(body), u32::from_le_bytes(*stored));
     if computed == stored { Ok(()) } else { Err(Error::WrongChecksum { computed, stored }) }
 }
 

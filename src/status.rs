@@ -42,7 +42,11 @@ bitflags! {
 }
 
 /// Writes the names of the set flags, lower case, joined by `+`; `good` or `none` when none is set.
-fn write_names<'a>(f: &mut fmt::Formatter<'_>, names: impl Iterator<Item = &'a str>, when_empty: &str) -> fmt::Result {
+pub(crate) fn write_names<'a>(
+    f: &mut fmt::Formatter<'_>,
+    names: impl Iterator<Item = &'a str>,
+    when_empty: &str,
+) -> fmt::Result {
     let mut empty = true;
     for name in names {
         if !empty {
