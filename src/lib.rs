@@ -31,6 +31,9 @@ pub mod flow; // the walk
 
 pub mod record; // the calibration as bytes
 
+#[cfg(feature = "link")]
+pub mod link; // commands and answers over a serial line
+
 pub mod double; // the same kernels in double precision, for the bench
 
 #[doc(inline)]
