@@ -6,7 +6,7 @@
 use super::built_in::{self, BuiltIn};
 use super::error::LinkError;
 use super::header::{Path, matched};
-use super::lexer::{Nodes, cut, header, trim};
+use super::lexer::{Nodes, cut, header, trim_start};
 use super::parameter::Arguments;
 use super::reply::Reply;
 use super::session::Session;
@@ -55,7 +55,7 @@ impl<'t, C: Device> Interpreter<'t, C> {
         device: &mut C,
         reply: &mut Reply<'_>,
     ) -> Result<(), LinkError> {
-        if trim(unit).is_empty() {
+        if unit.is_empty() {
             return Ok(());
         }
         let (header, text) = header(unit)?;
@@ -124,12 +124,6 @@ impl<'t, C: Device> Interpreter<'t, C> {
         counted(&arguments, what.parameters(query))?;
         Ok(arguments)
     }
-}
-
-/// Without white space at the start; at the end it may belong to a block.
-fn trim_start(unit: &[u8]) -> &[u8] {
-    let start = unit.iter().position(|b| *b > b' ').unwrap_or(unit.len());
-    unit.get(start..).unwrap_or(&[])
 }
 
 fn counted(arguments: &Arguments<'_>, most: u8) -> Result<(), LinkError> {

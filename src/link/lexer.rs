@@ -28,13 +28,19 @@ const fn is_white(byte: u8) -> bool {
     byte <= b' '
 }
 
-/// Without white space at both ends.
-pub(crate) fn trim(mut bytes: &[u8]) -> &[u8] {
+/// Without white space at the start; at the end it may belong to a block.
+pub(crate) fn trim_start(mut bytes: &[u8]) -> &[u8] {
     while let [first, rest @ ..] = bytes
         && is_white(*first)
     {
         bytes = rest;
     }
+    bytes
+}
+
+/// Without white space at both ends.
+pub(crate) fn trim(bytes: &[u8]) -> &[u8] {
+    let mut bytes = trim_start(bytes);
     while let [rest @ .., last] = bytes
         && is_white(*last)
     {
@@ -89,7 +95,7 @@ pub(crate) fn header(unit: &[u8]) -> Result<(Header<'_>, &[u8]), LinkError> {
     let common = name.first() == Some(&b'*');
     let rooted = name.first() == Some(&b':');
     let nodes = nodes(if rooted { name.get(1..).unwrap_or(&[]) } else { name }, common)?;
-    Ok((Header { absolute: rooted || common, common, query, nodes }, trim(rest)))
+    Ok((Header { absolute: rooted || common, common, query, nodes }, trim_start(rest)))
 }
 
 fn nodes(name: &[u8], common: bool) -> Result<Nodes<'_>, LinkError> {

@@ -3,6 +3,9 @@
 //! A block (`#` and its length) may hold any byte, LF too. A line that does not fit is swallowed to its end and
 //! refused as a whole, and so is one with a byte outside ASCII, which on a serial line means damage: nothing of it is
 //! executed. Half a line for ever costs nothing but the line's memory.
+//!
+//! A block whose bytes do not come keeps the line waiting for at most 65 535 bytes. An instrument that talks to a
+//! person or over a noisy line calls [`Line::clear`] when half a line has been silent for some seconds.
 
 use super::error::LinkError;
 use heapless::Vec;

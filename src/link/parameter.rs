@@ -6,7 +6,7 @@
 use super::decimal::Decimal;
 use super::error::LinkError;
 use super::header::{Suffixes, is_word};
-use super::lexer::{block, cut, trim};
+use super::lexer::{block, cut, trim, trim_start};
 use super::unit::{Unit, in_si};
 use core::ops::RangeInclusive;
 use heapless::String;
@@ -61,7 +61,7 @@ pub struct Arguments<'a> {
 impl<'a> Arguments<'a> {
     /// The parameters in `text`, which stand between a header and the end of its unit.
     pub fn new(text: &'a [u8]) -> Self {
-        let text = trim(text);
+        let text = trim_start(text);
         Self { rest: (!text.is_empty()).then_some(text), suffixes: Suffixes::new(), port: 0 }
     }
 
@@ -200,9 +200,8 @@ impl<'a> Arguments<'a> {
     fn next(&mut self) -> Result<&'a [u8], LinkError> {
         let (text, rest) = cut(self.rest.ok_or(LinkError::MissingParameter)?, b',')?;
         self.rest = rest;
+        let text = trim_start(text);
         // A block may end in what looks like white space.
-        let start = text.len() - text.iter().skip_while(|b| **b <= b' ').count();
-        let text = text.get(start..).unwrap_or(&[]);
         let text = if let [b'#', b'0'..=b'9', ..] = text { of_block(text) } else { trim(text) };
         match text {
             [] => Err(LinkError::MissingParameter),
