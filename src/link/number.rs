@@ -19,7 +19,7 @@ pub const EXACT_DIGITS: u8 = 9;
 /// ```
 /// use evenbore::link::number::scientific;
 /// assert_eq!(scientific(0.1, 7), "1.000000E-01");
-/// assert_eq!(scientific(-6.022_140_8e23, 9), "-6.02214076E+23"); // the nearest f32
+/// assert_eq!(scientific(-0.1, 9), "-1.00000001E-01"); // the f32 nearest to a tenth
 /// assert_eq!(scientific(f32::NAN, 7), "9.91E+37");
 /// ```
 pub fn scientific(value: f32, digits: u8) -> NumberText {
