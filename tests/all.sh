@@ -10,6 +10,7 @@ export RUSTDOCFLAGS="-D warnings"
 BARE_TARGETS=(thumbv6m-none-eabi thumbv7em-none-eabihf)
 # Feature sets of the library: none, each, all.
 FEATURE_SETS=("" defmt serde hal "defmt serde hal")
+FEATURE_SETS=("" defmt link serde "defmt link serde")
 
 stage() { printf '\n== %s\n' "$*"; }
 die() { printf 'tests/all.sh: %s\n' "$*" >&2; exit 1; }
@@ -58,10 +59,11 @@ done
 stage "tests, documentation examples and example programs"
 cargo test --locked --workspace --no-fail-fast
 cargo test --quiet --locked --package evenbore --features defmt,serde,hal
+cargo test --quiet --locked --package evenbore --features defmt,link,serde
 for example in examples/*.rs; do
     name="$(basename "$example" .rs)"
     echo "example $name"
-    cargo run --quiet --locked --example "$name" > /dev/null
+    cargo run --quiet --locked --features link --example "$name" > /dev/null < /dev/null
 done
 
 stage "documentation"
