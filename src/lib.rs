@@ -31,6 +31,9 @@ pub mod flow; // the walk
 
 pub mod record; // the calibration as bytes
 
+#[cfg(feature = "store")]
+pub mod store; // what survives a power cut
+
 pub mod double; // the same kernels in double precision, for the bench
 
 #[doc(inline)]

@@ -6,7 +6,7 @@
 
 mod layout; // the bytes
 
-pub use layout::RECORD_LENGTH;
+pub use layout::{RECORD_LENGTH, RECORD_VERSION};
 
 use crate::calibration::Quality;
 use crate::element::Element;
