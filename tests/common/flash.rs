@@ -1,6 +1,8 @@
 //! A NOR flash that misbehaves like a real one: bits only fall, a word is programmed once per erase, power fails in the
 //! middle of a word or of an erase, pages wear out, torn words may be unreadable (error correction).
 
+#![allow(dead_code)] // every test file uses its own part
+
 use embedded_storage::nor_flash::{ErrorType, NorFlash, NorFlashError, NorFlashErrorKind, ReadNorFlash};
 
 /// Why the flash refused.
@@ -183,7 +185,7 @@ impl<const WORD: usize, const PAGE: usize> ReadNorFlash for MockFlash<WORD, PAGE
         if self.dead {
             return Err(MockError::PowerCut);
         }
-        if at % WORD != 0 || length % WORD != 0 || at + length > self.bytes.len() {
+        if !at.is_multiple_of(WORD) || !length.is_multiple_of(WORD) || at + length > self.bytes.len() {
             return Err(MockError::Request);
         }
         if self.unreadable[at / WORD..(at + length) / WORD].contains(&true) {
@@ -207,7 +209,7 @@ impl<const WORD: usize, const PAGE: usize> NorFlash for MockFlash<WORD, PAGE> {
             return Err(MockError::PowerCut);
         }
         let (from, to) = (from as usize, to as usize);
-        if from % PAGE != 0 || to % PAGE != 0 || from > to || to > self.bytes.len() {
+        if !from.is_multiple_of(PAGE) || !to.is_multiple_of(PAGE) || from > to || to > self.bytes.len() {
             return Err(MockError::Request);
         }
         (from / PAGE..to / PAGE).try_for_each(|page| self.erase_page(page))
@@ -218,7 +220,7 @@ impl<const WORD: usize, const PAGE: usize> NorFlash for MockFlash<WORD, PAGE> {
             return Err(MockError::PowerCut);
         }
         let at = offset as usize;
-        if at % WORD != 0 || bytes.len() % WORD != 0 || at + bytes.len() > self.bytes.len() {
+        if !at.is_multiple_of(WORD) || !bytes.len().is_multiple_of(WORD) || at + bytes.len() > self.bytes.len() {
             return Err(MockError::Request);
         }
         bytes.chunks(WORD).enumerate().try_for_each(|(i, word)| self.program(at + i * WORD, word))
