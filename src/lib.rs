@@ -44,8 +44,12 @@ pub mod health; // what is wrong, in the categories of NE 107, and whether the f
 pub mod total; // volumes and masses since the beginning, in whole sub-units
 
 pub mod output; // current loop, pulses, alarms, simulation
+
 #[cfg(feature = "link")]
 pub mod link; // commands and answers over a serial line
+
+#[cfg(feature = "store")]
+pub mod store; // what survives a power cut
 
 pub mod double; // the same kernels in double precision, for the bench
 

@@ -26,7 +26,9 @@ pub const SERIAL_LENGTH: usize = 16;
 pub const REASON_LENGTH: usize = 64;
 
 const MARK: [u8; 4] = *b"EVBR";
-const VERSION: u16 = 1;
+/// Newest version of a record's bytes that this code reads, and the one it writes.
+pub const RECORD_VERSION: u16 = 1;
+
 const CRC: crc::Crc<u32> = crc::Crc::<u32>::new(&crc::CRC_32_ISO_HDLC);
 
 /// CRC-32 (ISO 3309, IEEE 802.3) of `bytes`, for all that the library stores.
@@ -138,7 +140,7 @@ impl Record {
     pub fn encode(&self, bytes: &mut [u8; RECORD_LENGTH]) {
         let mut w = Writer { bytes, at: 0 };
         w.put(&MARK);
-        w.put(&VERSION.to_le_bytes());
+        w.put(&RECORD_VERSION.to_le_bytes());
         w.put(&(RECORD_LENGTH as u16).to_le_bytes());
         w.text::<SERIAL_LENGTH>(&self.serial);
         w.put(&self.date.to_le_bytes());
@@ -165,8 +167,8 @@ impl Record {
             return Err(Error::NotARecord);
         }
         let version = u16::from_le_bytes(r.take().ok_or(length)?);
-        if version == 0 || version > VERSION {
-            return Err(Error::UnknownVersion { found: version, newest: VERSION });
+        if version == 0 || version > RECORD_VERSION {
+            return Err(Error::UnknownVersion { found: version, newest: RECORD_VERSION });
         }
         let stated = usize::from(u16::from_le_bytes(r.take().ok_or(length)?));
         if stated != RECORD_LENGTH || bytes.len() != RECORD_LENGTH {

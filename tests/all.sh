@@ -9,8 +9,7 @@ export RUSTDOCFLAGS="-D warnings"
 # Targets without an operating system on which the library must build.
 BARE_TARGETS=(thumbv6m-none-eabi thumbv7em-none-eabihf)
 # Feature sets of the library: none, each, all.
-FEATURE_SETS=("" defmt serde hal "defmt serde hal")
-FEATURE_SETS=("" defmt link serde "defmt link serde")
+FEATURE_SETS=("" defmt hal link serde store "defmt hal link serde store")
 
 stage() { printf '\n== %s\n' "$*"; }
 die() { printf 'tests/all.sh: %s\n' "$*" >&2; exit 1; }
@@ -58,8 +57,7 @@ done
 
 stage "tests, documentation examples and example programs"
 cargo test --locked --workspace --no-fail-fast
-cargo test --quiet --locked --package evenbore --features defmt,serde,hal
-cargo test --quiet --locked --package evenbore --features defmt,link,serde
+cargo test --quiet --locked --package evenbore --features defmt,hal,link,serde,store
 for example in examples/*.rs; do
     name="$(basename "$example" .rs)"
     echo "example $name"

@@ -1,8 +1,8 @@
 //! Low-flow cut-off: below the least flow that means something the flow is zero, so that a zero's noise is not
 //! totalled.
 
-use crate::error::{Error, within};
 use crate::conditions::Sample;
+use crate::error::{Error, within};
 use crate::math::Real;
 use crate::quantity::{MassFlow, VolumeFlow};
 
