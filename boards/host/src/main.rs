@@ -8,6 +8,9 @@ use std::process::ExitCode;
 
 /// Calibrates laminar flow elements and computes viscosity-compensated flow from their readings.
 ///
+/// Files are CSV and TOML with the units in their column names and keys; a minus sign in place of a file is standard
+/// input or output. The help of each command says what its files hold.
+///
 /// Exit codes: 0 done, 2 bad input, 3 calibration run refused.
 #[derive(Debug, Parser)]
 #[command(name = "evenbore", version, max_term_width = 100)]
@@ -19,8 +22,27 @@ struct Arguments {
 #[derive(Debug, Subcommand)]
 enum Command {
     /// Fit an element to bench points, judge the run, write record and report
+    ///
+    /// A point needs the columns pressure_drop_<unit>, temperature_<unit>, line_pressure_<unit> (absolute, at the port
+    /// marked upstream) and reference_flow_<unit> or reference_mass_flow_<unit>. A volume flow holds at
+    /// reference_temperature_<unit> and reference_pressure_<unit>, or at the element's inlet without them. Beside each,
+    /// u_<quantity>_<unit> states the standard uncertainty that varies from point to point, u_<quantity>_common_<unit>
+    /// the one that all points share and that does not average away. Without any of the former the scatter of the
+    /// points is taken, with fewer degrees of freedom and a larger coverage factor.
+    ///
+    /// The run is refused (exit code 3, no record) when the points do not fit the laminar law within their stated
+    /// uncertainties, when one stands out, or when A and B are not those of the drawing; the findings say why.
+    #[command(after_long_help = "Example:\n  evenbore calibrate bench.csv --element element.toml --out EB-0042")]
     Calibrate(calibrate::Arguments),
     /// Compensate readings with the instrument's own arithmetic
+    ///
+    /// A reading needs the columns pressure_drop_<unit>, temperature_<unit> and line_pressure_<unit> (absolute, at the
+    /// port marked upstream whichever way the flow goes), or line_gauge_pressure_<unit> with
+    /// barometric_pressure_<unit>; relative_humidity_<unit> makes air moist, and its cell stays empty for other fluids.
+    /// All columns are carried through. Added are volume_flow (at the line's temperature and pressure), mass_flow,
+    /// standard_flow (dry, at the reference conditions), reynolds, u_volume_flow_rel (standard, relative) and status:
+    /// good, or what a flow is flagged with, or why there is none, in which case its cells are empty.
+    #[command(after_long_help = "Example:\n  evenbore flow day.csv --record EB-0042/record.toml --out flows.csv")]
     Flow(flow::Arguments),
     /// Show the stored fluids
     #[command(subcommand)]

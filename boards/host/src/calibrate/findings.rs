@@ -1,7 +1,7 @@
 //! What is wrong with a run, and which points say so.
 //!
-//! Order of diagnosis when the fit lacks: not laminar (points above the lowest half rise off its line), one outlier,
-//! a zero offset of the pressure drop, else missing physics. Geometry is asked in any case: it alone sees a wrong gas,
+//! Order of diagnosis when the fit lacks: one outlier (unless it belongs to a rising tail), a zero offset of the pressure
+//! drop, not laminar (points above the lowest half rise off its line), else missing physics. Geometry is asked in any case: it alone sees a wrong gas,
 //! whose fit looks perfect.
 
 use crate::calibrate::fit::{Basis, Prior, Solution, fit, sigma_of};
@@ -22,12 +22,12 @@ const SMALL_PROBABILITY: f64 = 0.05;
 /// Fewest points for a run to stand, and for it to pass without remark.
 const FEWEST: [usize; 2] = [5, 8];
 /// Share by which A and B may differ from nominal geometry.
-const GEOMETRY_LIMITS: [f64; 2] = [0.10, 0.30];
+pub const GEOMETRY_LIMITS: [f64; 2] = [0.10, 0.30];
 
 /// Everything the diagnosis looks at.
 #[derive(Debug, Clone, Copy)]
 pub struct Run<'a> {
-    /// Samples used, in the order of the file.
+    /// Samples used, by x.
     pub samples: &'a [Sample],
     /// Their fit.
     pub solution: &'a Solution,
@@ -52,7 +52,8 @@ pub fn diagnose(run: &Run<'_>) -> Result<Vec<Finding>> {
     let mut findings = Vec::new();
     findings.extend(too_few(run));
     findings.extend(lack(run)?);
-    findings.extend(geometry(run));
+    let explained = findings.iter().any(|found| ["not-laminar", "outlier", "zero-offset"].contains(&&*found.kind));
+    findings.extend(geometry(run, explained));
     findings.extend(prior_used(run));
     findings.extend(suspiciously_good(run)?);
     findings.sort_by_key(|finding| !finding.refuses);
@@ -63,7 +64,7 @@ fn too_few(run: &Run<'_>) -> Option<Finding> {
     let n = run.samples.len();
     let [least, plenty] = FEWEST;
     (n < plenty).then(|| {
-        let message = format!("{n} points: {least} are the least for a calibration, {plenty} or more let errors show");
+        let message = format!("The run has {n} points: {least} are the least for a calibration, {plenty} or more let errors show");
         finding("too-few-points", Vec::new(), n < least, message)
     })
 }
@@ -80,14 +81,16 @@ fn lack(run: &Run<'_>) -> Result<Vec<Finding>> {
     if !lacks {
         return Ok(outlier.into_iter().chain(beyond.map(|lines| laminar_limit(lines, false))).collect());
     }
-    let cause = match transition(run)? {
-        Some(lines) => laminar_limit(lines, true),
-        None => match (outlier_that_heals(run)?, zero_offset(run)?) {
-            (Some(found), _) | (None, Some(found)) => found,
-            (None, None) => missing_physics(run, curved),
-        },
-    };
-    Ok(vec![cause])
+    // What explains every point goes before what sets some aside; a zero bends the bottom of a run, a transition its top.
+    if let Some(found) = outlier_that_heals(run)? {
+        let lines = transition(run)?;
+        return Ok(vec![lines.map_or(found, |lines| laminar_limit(lines, true))]);
+    }
+    if let Some(found) = zero_offset(run)? {
+        return Ok(vec![found]);
+    }
+    let lines = transition(run)?;
+    Ok(vec![lines.map_or_else(|| missing_physics(run, curved), |lines| laminar_limit(lines, true))])
 }
 
 /// Points above the laminar limit, by Reynolds number.
@@ -100,10 +103,10 @@ fn beyond_laminar(run: &Run<'_>) -> Option<Vec<u64>> {
 
 fn laminar_limit(lines: Vec<u64>, refuses: bool) -> Finding {
     let message = if refuses {
-        "the pressure drop rises off the laminar law at these points: the flow is no longer laminar there, or \
+        "The pressure drop rises off the laminar law at these points: the flow is no longer laminar there, or \
          something grows with flow that the law does not know"
     } else {
-        "these points lie above Re 1800, where the law is not held to be laminar, although they fit"
+        "These points lie above Re 1800, where the law is not held to be laminar, although they fit"
     };
     finding("not-laminar", lines, refuses, message.into())
 }
@@ -111,18 +114,13 @@ fn laminar_limit(lines: Vec<u64>, refuses: bool) -> Finding {
 /// Fits the lowest half of the run, adds points upward while they agree, and returns the lines from the first that
 /// rises off the fit, provided that what remains below fits.
 fn transition(run: &Run<'_>) -> Result<Option<Vec<u64>>> {
-    let mut sorted: Vec<&Sample> = run.samples.iter().collect();
-    sorted.sort_by(|p, q| p.columns.x.total_cmp(&q.columns.x));
+    let sorted = run.samples;
     let mut below = (sorted.len() / 2).max(4);
     while below < sorted.len() {
-        let lower: Vec<Sample> = sorted.iter().take(below).map(|&s| s.clone()).collect();
-        let line = fit(&lower, run.u_viscosity, run.solution.prior)?;
-        let z = prediction_error(&line, sorted[below]);
+        let line = fit(&sorted[..below], run.u_viscosity, run.solution.prior)?;
+        let z = prediction_error(&line, &sorted[below]);
         if z > OUTLYING {
-            let all_above = sorted[below..].iter().all(|s| prediction_error(&line, s) > OUTLYING / 2.0);
-            let agrees = line.p_value() >= REFUSING_PROBABILITY;
-            let lines = sorted[below..].iter().map(|s| s.line).collect();
-            return Ok((agrees && all_above && sorted.len() - below > 1).then_some(lines));
+            return rising_tail(run, below);
         }
         if z < -OUTLYING {
             return Ok(None);
@@ -130,6 +128,23 @@ fn transition(run: &Run<'_>) -> Result<Option<Vec<u64>>> {
         below += 1;
     }
     Ok(None)
+}
+
+/// The lines from `from` upward, and those before that rise with them, when all rise off a fit to the rest that agrees;
+/// one point alone is an outlier instead.
+fn rising_tail(run: &Run<'_>, mut from: usize) -> Result<Option<Vec<u64>>> {
+    let sorted = run.samples;
+    let below = |from: usize| fit(&sorted[..from], run.u_viscosity, run.solution.prior);
+    let half = (sorted.len() / 2).max(4);
+    while from > half && prediction_error(&below(from - 1)?, &sorted[from - 1]) > OUTLYING / 2.0 {
+        from -= 1;
+    }
+    let line = below(from)?;
+    let all_above = sorted[from..].iter().all(|s| prediction_error(&line, s) > OUTLYING / 2.0);
+    let agrees = line.p_value() >= REFUSING_PROBABILITY;
+    let mut lines: Vec<u64> = sorted[from..].iter().map(|s| s.line).collect();
+    lines.sort_unstable();
+    Ok((agrees && all_above && lines.len() > 1).then_some(lines))
 }
 
 /// Y of a sample against what a fit to others predicts, in standard uncertainties of the difference.
@@ -166,7 +181,7 @@ fn standing_out(run: &Run<'_>, i: usize, z: f64) -> Finding {
     let sample = &run.samples[i];
     let percent = 100.0 * run.solution.standardised[i] * run.solution.sigmas[i] / sample.columns.y;
     let message = format!(
-        "this point lies {:.1} standard uncertainties off the fit to all others ({percent:+.2} % in pressure drop); \
+        "This point lies {:.1} standard uncertainties off the fit to all others ({percent:+.2} % in pressure drop); \
          find its cause, then repeat it or leave it out with --without {}",
         z.abs(),
         sample.line
@@ -214,7 +229,7 @@ fn zero_offset(run: &Run<'_>) -> Result<Option<Finding>> {
     let fits = run.solution.basis == Basis::Residuals || chi_squared_upper(chi_squared, dof)? >= REFUSING_PROBABILITY;
     Ok((fits && zero.abs() > OUTLYING * u).then(|| {
         let message = format!(
-            "the pressure drop reads {zero:+.3} Pa (standard uncertainty {u:.3} Pa) at no flow: take its zero with the \
+            "The pressure drop reads {zero:+.3} Pa (standard uncertainty {u:.3} Pa) at no flow: take its zero with the \
              gas at line pressure and repeat the run"
         );
         finding("zero-offset", Vec::new(), true, message)
@@ -223,14 +238,14 @@ fn zero_offset(run: &Run<'_>) -> Result<Option<Finding>> {
 
 /// Probability that a term in x squared improves the fit by chance (F test).
 fn curvature(run: &Run<'_>) -> Result<f64> {
-    let n = run.samples.len();
-    if n < 5 {
+    let rows = run.samples.len() + usize::from(run.solution.prior.is_some());
+    if rows < 5 {
         return Ok(1.0);
     }
     let column: Vec<f64> = run.samples.iter().map(|s| s.columns.v * s.columns.x).collect();
-    let Ok((_, _, remains)) = with_column(run, &column, None) else { return Ok(1.0) };
-    let gained = run.solution.standardised.iter().map(|r| r * r).sum::<f64>() - remains;
-    let dof = (n - 3) as f64;
+    let Ok((_, _, remains)) = with_column(run, &column, run.solution.prior) else { return Ok(1.0) };
+    let gained = run.solution.chi_squared - remains;
+    let dof = (rows - 3) as f64;
     if remains <= 0.0 { Ok(1.0) } else { f_upper((gained / (remains / dof)).max(0.0), 1.0, dof) }
 }
 
@@ -242,7 +257,7 @@ fn missing_physics(run: &Run<'_>, curved: f64) -> Finding {
         "; the residuals show no trend, so the stated uncertainties are too small or the readings were not settled"
     };
     let message = format!(
-        "the points scatter more than their stated uncertainties allow: chi-squared {:.1} for {} degrees of freedom, \
+        "The points scatter more than their stated uncertainties allow: chi-squared {:.1} for {} degrees of freedom, \
          by chance in {:.2} % of runs (limit 1 %){hint}",
         run.solution.chi_squared,
         run.solution.degrees_of_freedom,
@@ -251,12 +266,12 @@ fn missing_physics(run: &Run<'_>, curved: f64) -> Finding {
     finding("lack-of-fit", Vec::new(), true, message)
 }
 
-/// A and B against nominal geometry.
-fn geometry(run: &Run<'_>) -> Option<Finding> {
+/// A and B against nominal geometry; B alone says nothing when points are `explained` to be wrong already.
+fn geometry(run: &Run<'_>, explained: bool) -> Option<Finding> {
     let [a0, b0] = run.nominal?;
     let (a, b) = (run.solution.a / a0, run.solution.b / b0);
     let [limit_a, limit_b] = GEOMETRY_LIMITS;
-    let (off_a, off_b) = ((a - 1.0).abs() > limit_a, run.solution.prior.is_none() && (b - 1.0).abs() > limit_b);
+    let (off_a, off_b) = ((a - 1.0).abs() > limit_a, !explained && run.solution.prior.is_none() && (b - 1.0).abs() > limit_b);
     (off_a || off_b).then(|| {
         let message = format!(
             "A is {a:.3} and B is {b:.3} of what the drawing gives (limits 1 +- {limit_a:.2} and 1 +- {limit_b:.2}): the \
@@ -269,14 +284,14 @@ fn geometry(run: &Run<'_>) -> Option<Finding> {
 fn prior_used(run: &Run<'_>) -> Option<Finding> {
     let prior = run.solution.prior?;
     if prior.value == 0.0 {
-        let message = "the run does not show a kinetic term and the drawing gives none; B is held at zero, and the \
+        let message = "The run does not show a kinetic term and the drawing gives none; B is held at zero, and the \
                        range of validity ends with the run";
         return Some(finding("b-from-prior", Vec::new(), false, message.into()));
     }
     Some({
         let percent = 100.0 * prior.u / prior.value;
         let message = format!(
-            "the run does not reach flows large enough to fix B; it is held at its geometric value within {percent:.0} %, \
+            "The run does not reach flows large enough to fix B; it is held at its geometric value within {percent:.0} %, \
              and the range of validity ends with the run"
         );
         finding("b-from-prior", Vec::new(), false, message)
@@ -292,8 +307,8 @@ fn suspiciously_good(run: &Run<'_>) -> Result<Option<Finding>> {
     let by_chance = 1.0 - chi_squared_upper(chi, dof)?;
     Ok((by_chance < SMALL_PROBABILITY).then(|| {
         let message = format!(
-            "chi-squared is only {:.2} per degree of freedom: the stated independent uncertainties seem to hold a part \
-             that all points share; state it in a u_..._common column, or it is averaged away",
+            "Chi-squared is only {:.2} per degree of freedom: the independent uncertainties stated are larger than \
+             the scatter; if they hold a part that all points share, state it as u_..._common, or it is averaged away",
             chi / dof
         );
         finding("stated-uncertainty-too-large", Vec::new(), false, message)

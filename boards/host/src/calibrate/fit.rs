@@ -72,17 +72,13 @@ pub struct Solution {
     pub leave_one_out: Vec<f64>,
     /// Basis of the uncertainties.
     pub basis: Basis,
+    /// Relative standard uncertainty of every Y when the residuals are the basis.
+    pub scatter: f64,
     /// The prior used, if any.
     pub prior: Option<Prior>,
 }
 
 impl Solution {
-    /// Relative scatter of Y about the fit, when the residuals are the basis.
-    fn relative_scatter(&self, samples: &[Sample]) -> f64 {
-        let first = self.sigmas.iter().zip(samples).next();
-        first.map_or(1.0, |(sigma, sample)| sigma / sample.columns.y.abs()).max(f64::EPSILON)
-    }
-
     /// Effective degrees of freedom of the fit's uncertainty: infinite when it was stated beforehand.
     pub fn type_a_degrees_of_freedom(&self) -> f64 {
         if self.basis == Basis::Stated { f64::INFINITY } else { self.degrees_of_freedom as f64 }
@@ -105,9 +101,13 @@ impl Solution {
     }
 }
 
+/// Whether a sample states an independent uncertainty; one of zero states nothing, since nothing is exact.
+fn states(sample: &Sample) -> bool {
+    sample.sources.iter().any(|(_, parts, _)| parts.independent.is_some_and(|u| u > 0.0))
+}
+
 /// Basis that a set of samples offers.
 pub fn basis_of(samples: &[Sample]) -> Basis {
-    let states = |sample: &Sample| sample.sources.iter().any(|(_, parts, _)| parts.independent.is_some());
     if samples.iter().any(states) { Basis::Stated } else { Basis::Residuals }
 }
 
@@ -121,21 +121,24 @@ fn effective(sample: &Sample, a: f64, b: f64) -> f64 {
 pub fn sigma_of(sample: &Sample, solution: &Solution) -> f64 {
     match solution.basis {
         Basis::Stated => effective(sample, solution.a, solution.b),
-        Basis::Residuals => solution.sigmas.first().map_or(f64::NAN, |s| s * sample.columns.y / solution.a),
+        Basis::Residuals => solution.scatter * sample.columns.y.abs(),
     }
 }
 
 /// A sample that states no independent uncertainty although others do: its line in the points file.
 pub fn unstated_line(samples: &[Sample]) -> Option<u64> {
-    let silent = |s: &&Sample| s.sources.iter().all(|(_, parts, _)| parts.independent.is_none_or(|u| u == 0.0));
-    (basis_of(samples) == Basis::Stated).then(|| samples.iter().find(silent).map(|s| s.line)).flatten()
+    let silent = samples.iter().filter(|sample| !states(sample)).map(|sample| sample.line).min();
+    silent.filter(|_| basis_of(samples) == Basis::Stated)
 }
 
 /// Effect on every residual of one standard uncertainty of what `cause` shares among the points.
 fn common_effects(samples: &[Sample], cause: Cause, u_viscosity: f64, a: f64, b: f64) -> Vec<f64> {
     let of_sources = |sample: &Sample, wanted: &[Source]| {
         let parts = sample.sources.iter().filter(|(source, _, _)| wanted.contains(source));
-        let effects = parts.map(|(_, parts, slope)| parts.common.unwrap_or(0.0) * slope.of_residual(a, b));
+        let effects = parts.map(|(source, parts, slope)| {
+            let turned = if is_gain(*source, cause) { sample.pressure_drop.signum() } else { 1.0 };
+            parts.common.unwrap_or(0.0) * slope.of_residual(a, b) * turned
+        });
         // Sources of one cause that act alike add in squares and keep the sign of the first.
         let (first, squares) =
             effects.fold((0.0, 0.0), |(first, sum), e| (if first == 0.0 { e } else { first }, sum + e * e));
@@ -152,6 +155,11 @@ fn common_effects(samples: &[Sample], cause: Cause, u_viscosity: f64, a: f64, b:
         Cause::Geometry => 0.0,
     };
     samples.iter().map(effect).collect()
+}
+
+/// Whether a common part follows the size of its value, so that it turns round with the flow.
+fn is_gain(source: Source, cause: Cause) -> bool {
+    source == Source::ReferenceFlow || (source == Source::PressureDrop && cause == Cause::PressureDrop)
 }
 
 /// Whether the common part of the pressure drop is a zero (one pascal value) rather than a gain (one relative value).
@@ -222,7 +230,7 @@ pub fn fit(samples: &[Sample], u_viscosity: f64, prior: Option<Prior>) -> Result
     let basis = basis_of(samples);
     let known_scatter = match (basis, prior) {
         // A prior needs errors of known size beside it: those of the fit without it.
-        (Basis::Residuals, Some(_)) => Some(fit(samples, u_viscosity, None)?.relative_scatter(samples)),
+        (Basis::Residuals, Some(_)) => Some(fit(samples, u_viscosity, None)?.scatter.max(f64::EPSILON)),
         _ => None,
     };
     let problem = Problem { samples, prior, zero: zero_like(samples), scatter: known_scatter.unwrap_or(1.0) };
@@ -254,6 +262,7 @@ pub fn fit(samples: &[Sample], u_viscosity: f64, prior: Option<Prior>) -> Result
         leave_one_out: leave_one_out(&fit, basis, n),
         sigmas: sigmas.iter().take(n).map(|s| s * unit).collect(),
         basis,
+        scatter: problem.scatter * unit,
         prior,
     })
 }

@@ -148,6 +148,8 @@ pub struct Sample {
     pub sources: Vec<(Source, Parts, Slope)>,
     /// Pressure drop, Pa.
     pub pressure_drop: f64,
+    /// Element temperature, K.
+    pub temperature: f64,
     /// Line pressure, Pa.
     pub line_pressure: f64,
     /// Reference flow as the file gives it, m3/s or kg/s.
@@ -177,6 +179,7 @@ impl Sample {
             mass_flow,
             sources,
             pressure_drop: point.pressure_drop,
+            temperature: point.temperature,
             line_pressure: point.line_pressure,
             reference_flow: point.reference.flow(),
         })
@@ -188,16 +191,20 @@ impl Sample {
     }
 }
 
-/// Derivative of the columns with respect to a source, by a central difference.
+/// Derivative of the columns with respect to a source: a central difference, one-sided at the edge of a table.
 fn slope(setup: &Setup<'_>, measured: &Measured, source: Source) -> Result<Slope, Refusal> {
     let Some(value) = measured.get(source) else { return Ok(Slope::default()) };
     let (above, below) = match source {
         Source::RelativeHumidity => ((1.0 - value).min(STEP), value.min(STEP)),
         _ => (STEP * value.abs(), STEP * value.abs()),
     };
-    let (up, _) = setup.columns(&measured.moved(source, above))?;
-    let (down, _) = setup.columns(&measured.moved(source, -below))?;
-    let per = |high: f64, low: f64| (high - low) / (above + below);
+    let here = setup.columns(measured)?.0;
+    let at = |by: f64| setup.columns(&measured.moved(source, by)).map_or((here, 0.0), |(columns, _)| (columns, by));
+    let ((up, above), (down, below)) = (at(above), at(-below));
+    if above == below {
+        return Ok(Slope::default());
+    }
+    let per = |high: f64, low: f64| (high - low) / (above - below);
     Ok(Slope { y: per(up.y, down.y), u: per(up.u, down.u), v: per(up.v, down.v) })
 }
 

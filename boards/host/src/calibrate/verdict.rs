@@ -56,7 +56,7 @@ pub struct Verdict {
 /// where others have one.
 pub fn calibrate(points: &Points, order: &Order<'_>) -> Result<Verdict, Problem> {
     let all = samples(points, order)?;
-    let used: Vec<Sample> = all.iter().filter(|s| !order.without.contains(&s.line)).cloned().collect();
+    let used = used(&all, order);
     check_spread(points, &used)?;
     let general = |error: crate::statistics::StatisticsError| Problem::new(&points.file, error.to_string());
     let u_viscosity = f64::from(order.fluid.u_viscosity());
@@ -71,9 +71,17 @@ pub fn calibrate(points: &Points, order: &Order<'_>) -> Result<Verdict, Problem>
     let mut findings = findings::diagnose(&run).map_err(general)?;
     name_other_fluids(&mut findings, points, order);
     let refused = findings.iter().any(|finding| finding.refuses);
-    let record = record(order, &solution, &used, points).map_err(|e| Problem::new(&points.file, e.to_string()))?;
+    let record = record(order, &solution, &used).map_err(|e| Problem::new(&points.file, e.to_string()))?;
     let calibration = outcome(points, order, &run, &all, findings, &record);
     Ok(Verdict { calibration, record: (!refused || order.accept_anyway.is_some()).then_some(record) })
+}
+
+/// The samples that are not left out, by x, so that the order of the file changes no digit.
+fn used(all: &[Sample], order: &Order<'_>) -> Vec<Sample> {
+    let mut used: Vec<Sample> = all.iter().filter(|s| !order.without.contains(&s.line)).cloned().collect();
+    let key = |s: &Sample| (s.columns.x, s.columns.y);
+    used.sort_by(|p, q| key(p).0.total_cmp(&key(q).0).then(key(p).1.total_cmp(&key(q).1)));
+    used
 }
 
 fn nominal(order: &Order<'_>) -> Option<[f64; 2]> {
@@ -95,6 +103,15 @@ fn samples(points: &Points, order: &Order<'_>) -> Result<Vec<Sample>, Problem> {
 
 /// Why the fluid cannot serve a point, with values and limits.
 fn refused(points: &Points, point: &Point, fluid: &StoredFluid, refusal: Refusal) -> Problem {
+    if let (Some(humidity), Refusal::HUMIDITY_INVALID) = (point.relative_humidity, refusal) {
+        let message = format!(
+            "{refusal}: a relative humidity of {:.1} pct beside {}; it belongs to air and lies within 0 to 100 pct, so \
+             leave the cell empty for other fluids",
+            100.0 * humidity,
+            fluid.name()
+        );
+        return Problem::new(&points.file, message).at_line(point.line);
+    }
     let [t_low, t_high] = fluid.temperature_range().map(Temperature::as_celsius);
     let [p_low, p_high] = fluid.pressure_range().map(|p| p.as_kilopascals());
     let message = format!(
@@ -114,8 +131,9 @@ const LEAST_SPAN: f64 = 1.2;
 fn check_spread(points: &Points, used: &[Sample]) -> Result<(), Problem> {
     let problem = |message: String| Err(Problem::new(&points.file, message));
     if used.len() < 3 {
-        let message = format!("{} points are used: at least 3 are needed to fit, 8 or more to judge a run", used.len());
-        return problem(message);
+        let n = used.len();
+        let are = if n == 1 { "point is" } else { "points are" };
+        return problem(format!("{n} {are} used: at least 3 are needed to fit, 8 or more to judge a run"));
     }
     let (low, high) = span(used);
     if high < LEAST_SPAN * low {
@@ -150,30 +168,39 @@ fn best_fit(used: &[Sample], order: &Order<'_>, u_viscosity: f64) -> crate::stat
     fit::fit(used, u_viscosity, Some(prior))
 }
 
-/// Names the fluids of the same phase with which A would agree with the drawing.
+/// Names the fluids of the same phase with which A and B would agree with the drawing.
 fn name_other_fluids(findings: &mut [Finding], points: &Points, order: &Order<'_>) {
     let Some(finding) = findings.iter_mut().find(|finding| finding.kind == "fluid-mismatch") else { return };
-    let Some([a0, _]) = nominal(order) else { return };
-    let agrees = |fluid: &&StoredFluid| {
-        let setup = Setup { element: &order.element, fluid };
-        let samples: Result<Vec<Sample>, Refusal> = points.points.iter().map(|p| Sample::new(&setup, p)).collect();
-        let Ok(samples) = samples else { return false };
-        let used: Vec<Sample> = samples.into_iter().filter(|s| !order.without.contains(&s.line)).collect();
-        let fitted = fit::fit(&used, 0.0, None);
-        fluid.name() != order.fluid.name() && fitted.is_ok_and(|fit| (fit.a / a0 - 1.0).abs() < 0.03)
-    };
-    let names: Vec<&str> = order.alternatives.iter().copied().filter(agrees).map(StoredFluid::name).collect();
+    let others = order.alternatives.iter().filter(|fluid| fluid.name() != order.fluid.name());
+    let mut names: Vec<(f64, &str)> =
+        others.filter_map(|fluid| Some((distance_from_drawing(points, order, fluid)?, fluid.name()))).collect();
+    names.sort_by(|p, q| p.0.total_cmp(&q.0));
     if !names.is_empty() {
-        finding.message += &format!("; with these fluids A would be within 3 %: {}", names.join(", "));
+        let names: Vec<&str> = names.into_iter().map(|(_, name)| name).take(MOST_NAMES).collect();
+        finding.message += &format!("; fluids that would agree with it, the nearest first: {}", names.join(", "));
     }
 }
+
+/// How far A is from the drawing were the run made on `fluid`; nothing where A or B is beyond the limits.
+fn distance_from_drawing(points: &Points, order: &Order<'_>, fluid: &StoredFluid) -> Option<f64> {
+    let [a0, b0] = nominal(order)?;
+    let setup = Setup { element: &order.element, fluid };
+    let samples: Result<Vec<Sample>, Refusal> = points.points.iter().map(|p| Sample::new(&setup, p)).collect();
+    let fitted = fit::fit(&used(&samples.ok()?, order), 0.0, None).ok()?;
+    let [limit_a, limit_b] = findings::GEOMETRY_LIMITS;
+    let [_, u_b] = fitted.covariance.standard_uncertainties();
+    let (off_a, off_b) = ((fitted.a / a0 - 1.0).abs(), (fitted.b / b0 - 1.0).abs());
+    (off_a < limit_a && off_b < limit_b + 2.0 * u_b / b0).then_some(off_a)
+}
+
+/// Fluids named at most when the declared one does not fit.
+const MOST_NAMES: usize = 3;
 
 /// The record of a fit.
 fn record(
     order: &Order<'_>,
     solution: &Solution,
     used: &[Sample],
-    points: &Points,
 ) -> Result<Record, evenbore::error::Error> {
     let (x_min, x_max) = span(used);
     let [u_a, u_b] = solution.covariance.standard_uncertainties();
@@ -191,7 +218,7 @@ fn record(
         common: solution.common.iter().map(part).collect(),
         x_min_m: x_min as f32,
         x_max_m: x_max as f32,
-        temperature_k: Temperature::from_kelvin(mean(used, points, |p| p.temperature) as f32),
+        temperature_k: Temperature::from_kelvin(mean(used, |s| s.temperature) as f32),
     };
     let element = order.element.with_coefficients(solution.a as f32, solution.b.max(0.0) as f32)?;
     let (year, month, day) = order.date;
@@ -204,9 +231,8 @@ fn record(
 }
 
 /// Mean over the used points.
-fn mean(used: &[Sample], points: &Points, of: impl Fn(&Point) -> f64) -> f64 {
-    let values = points.points.iter().filter(|p| used.iter().any(|s| s.line == p.line)).map(of);
-    values.sum::<f64>() / used.len() as f64
+fn mean(used: &[Sample], of: impl Fn(&Sample) -> f64) -> f64 {
+    used.iter().map(of).sum::<f64>() / used.len() as f64
 }
 
 /// Puts together all that was found.
@@ -227,7 +253,7 @@ fn outcome(
     let per_x = run.reynolds_per_x;
     let largest_drop = run.samples.iter().map(|s| s.pressure_drop.abs()).fold(0.0, f64::max);
     let (year, month, day) = order.date;
-    let state = [mean(run.samples, points, |p| p.temperature), mean(run.samples, points, |p| p.line_pressure)];
+    let state = [mean(run.samples, |s| s.temperature), mean(run.samples, |s| s.line_pressure)];
     let dof = solution.type_a_degrees_of_freedom();
     Calibration {
         serial: order.serial.into(),

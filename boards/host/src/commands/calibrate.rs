@@ -43,7 +43,7 @@ pub struct Arguments {
     #[arg(long, value_name = "REASON", value_parser = reason)]
     accept_anyway: Option<String>,
     /// Date of the calibration, YYYY-MM-DD; today if not given
-    #[arg(long, value_name = "DATE")]
+    #[arg(long, value_name = "DATE", value_parser = date)]
     date: Option<jiff::civil::Date>,
     /// Conditions at which the instrument quotes standard flow
     #[arg(long, value_name = "T,P", default_value = "0C,101.325kPa", value_parser = reference_conditions)]
@@ -58,6 +58,12 @@ pub struct Arguments {
 fn reason(text: &str) -> Result<String, String> {
     let fits = (1..=REASON_LENGTH).contains(&text.len()) && text.bytes().all(|c| (b' '..=b'~').contains(&c));
     if fits { Ok(text.into()) } else { Err(format!("1 to {REASON_LENGTH} printable ASCII characters are kept")) }
+}
+
+/// Reads `--date`.
+fn date(text: &str) -> Result<jiff::civil::Date, String> {
+    let date: jiff::civil::Date = text.parse().map_err(|_| "a date as 2026-12-01 was expected".to_string())?;
+    if (1970..=9999).contains(&date.year()) { Ok(date) } else { Err("years 1970 to 9999 are kept".into()) }
 }
 
 /// Runs the command.
@@ -128,7 +134,7 @@ fn write_results(arguments: &Arguments, file: &ElementFile, verdict: &Verdict) -
     std::fs::create_dir_all(folder).map_err(|error| Problem::io(&name, "cannot make the folder", &error))?;
     let provenance = Provenance {
         tool_version: env!("CARGO_PKG_VERSION").into(),
-        command: std::env::args().skip(1).fold("evenbore".into(), |line, word| line + " " + &word),
+        command: std::env::args_os().skip(1).fold("evenbore".into(), |line, word| line + " " + &word.to_string_lossy()),
         record_crc: verdict.record.as_ref().map(|record| format!("{:08x}", record.checksum())),
         element: describe(file),
     };
@@ -171,10 +177,7 @@ fn summary(verdict: &Verdict, folder: &Path) -> String {
     if let (Some(a), Some(b)) = (c.geometry.a_ratio, c.geometry.b_ratio) {
         line(format!("  against the drawing: A {a:.4}, B {b:.3}"));
     }
-    line(format!(
-        "  {} of {} points; chi-squared {:.1} for {} degrees of freedom, p = {:.3}",
-        c.points_used, c.points, c.chi_squared, c.degrees_of_freedom, c.p_value
-    ));
+    line(format!("  {} of {} points; {}", c.points_used, c.points, agreement(c)));
     if let (Some(low), Some(high)) = (c.uncertainty.first(), c.uncertainty.last()) {
         for row in [low, high] {
             line(format!(
@@ -187,12 +190,30 @@ fn summary(verdict: &Verdict, folder: &Path) -> String {
     }
     for finding in &c.findings {
         let points: Vec<String> = finding.points.iter().map(u64::to_string).collect();
-        let place = if points.is_empty() { String::new() } else { format!(" (line {})", points.join(", ")) };
+        let place = match points.len() {
+            0 => String::new(),
+            1 => format!(" (line {})", points[0]),
+            _ => format!(" (lines {})", points.join(", ")),
+        };
         line(format!("  {}{place}: {}", finding.kind, finding.message));
     }
     let files = if verdict.record.is_some() { "record.toml, record.bin, " } else { "no record; " };
     line(format!("  in {}: {files}calibration.json, report.html", folder.display()));
     text
+}
+
+/// How points and fit agree.
+fn agreement(c: &Calibration) -> String {
+    if c.uncertainty_basis == "residuals" {
+        return format!("no independent uncertainty stated, scatter {:.3} % about the fit", 100.0 * scatter(c));
+    }
+    let p = if c.p_value < 0.001 { "p < 0.001".into() } else { format!("p = {:.3}", c.p_value) };
+    format!("chi-squared {:.1} for {} degrees of freedom, {p}", c.chi_squared, c.degrees_of_freedom)
+}
+
+/// Relative standard uncertainty of a point when the residuals are the basis; it is one for all.
+fn scatter(c: &Calibration) -> f64 {
+    c.residuals.iter().find(|row| row.used).map_or(0.0, |row| row.u_y / row.y.abs())
 }
 
 fn sentence(c: &Calibration) -> &'static str {

@@ -83,16 +83,20 @@ pub fn run(arguments: &Arguments) -> Result<Ended, Problem> {
     let plan = ReadingsPlan::bind(&table)?;
     let mut meters = Meters::new(arguments, &origin, &fluids);
     let mut results = Results::create(arguments, &table)?;
-    let mut doubted = false;
+    let mut first = true;
     while let Some(row) = table.next_row()? {
+        if plan.is_silent(&row) {
+            results.write(row.raw(), &Err(Refusal::NOT_FINITE))?;
+            continue;
+        }
         let reading = plan.reading(&row)?;
+        // A wrong unit shows in the first row; later ones are a sensor's own affair, and have their status.
+        if std::mem::take(&mut first) && let Some(doubt) = plan.doubt(&row, &reading) {
+            eprintln!("evenbore: {doubt}");
+        }
         let meter = meters.of(&row, &plan, reading.fluid)?;
         let sensors = stated(&reading, meter.sensors());
         let flow = meter.flow_with(&as_reading(&reading), &sensors);
-        if !doubted && let Some(doubt) = plan.doubt(&row, &reading) {
-            eprintln!("evenbore: {doubt}");
-            doubted = true;
-        }
         results.write(row.raw(), &flow)?;
     }
     results.finish(arguments)?;

@@ -9,14 +9,19 @@ use crate::input::{
     toml_text::TomlText,
 };
 
-/// Longest name of a fluid, in characters.
-const LONGEST_NAME: usize = 32;
+/// Longest name of a fluid, in characters: what a record has room for.
+const LONGEST_NAME: usize = evenbore::fluid::stored::NAME_LENGTH;
 const TEMPERATURE: Limits = Limits::new(-150.0, 400.0, "C");
 const KINEMATIC_VISCOSITY: Limits = Limits::new(0.2, 1e6, "mm2/s");
 const DENSITY: Limits = Limits::new(300.0, 3000.0, "kg/m3");
 const EXPANSION: Limits = Limits::new(0.0, 5e-3, "1/K");
 const U_VISCOSITY: Limits = Limits::new(0.0, 1.0, "");
+const MOLAR_MASS: Limits = Limits::new(1.0, 1000.0, "g/mol");
+const PRESSURE: Limits = Limits::new(1.0, 20_000.0, "kPa");
 const MASS_FRACTION: Limits = Limits::new(0.0, 1.0, "");
+
+/// Pressure of a gas table that states none: the standard atmosphere, kPa.
+const STANDARD_PRESSURE: f64 = 101.325;
 
 const KINDS: &[&str] = &["oil", "water-glycol", "table"];
 const GLYCOLS: &[&str] = &["ethylene", "propylene"];
@@ -24,7 +29,7 @@ const GLYCOLS: &[&str] = &["ethylene", "propylene"];
 const KEYS: [&[&str]; 3] = [
     &["kind", "kinematic_viscosity_mm2_s", "density_kg_m3", "expansion_per_K", "u_viscosity_rel"],
     &["kind", "glycol", "mass_fraction", "u_viscosity_rel"],
-    &["kind", "data", "u_viscosity_rel"],
+    &["kind", "data", "molar_mass_g_mol", "pressure_kPa", "u_viscosity_rel"],
 ];
 
 /// A fluid of the user's own.
@@ -63,6 +68,10 @@ pub enum DeclaredFluid {
         data: PathBuf,
         /// At least four rows, SI.
         rows: Vec<FluidRow>,
+        /// Molar mass, g/mol, which makes it a gas; a liquid has none.
+        molar_mass_g_mol: Option<f64>,
+        /// Absolute pressure at which a gas has the densities of its rows, kPa.
+        pressure_kpa: f64,
     },
 }
 
@@ -165,6 +174,11 @@ fn water_glycol(keys: &Section<'_>) -> Result<DeclaredFluid, Problem> {
 /// Reads a fluid given by a table.
 fn table(keys: &Section<'_>, folder: &Path) -> Result<DeclaredFluid, Problem> {
     let data = folder.join(keys.text("data")?);
-    let rows = read_rows(&data)?;
-    Ok(DeclaredFluid::Table { data, rows })
+    let molar_mass_g_mol = keys.optional_number("molar_mass_g_mol", MOLAR_MASS)?;
+    if molar_mass_g_mol.is_none() && keys.has("pressure_kPa") {
+        let message = "belongs to a gas, which has a molar_mass_g_mol; without one the table is a liquid's";
+        return Err(keys.problem("pressure_kPa", message));
+    }
+    let pressure_kpa = keys.optional_number("pressure_kPa", PRESSURE)?.unwrap_or(STANDARD_PRESSURE);
+    Ok(DeclaredFluid::Table { rows: read_rows(&data)?, data, molar_mass_g_mol, pressure_kpa })
 }

@@ -125,6 +125,18 @@ impl ReadingsPlan {
         Ok(ReadingRow { pressure_drop, temperature, line_pressure, relative_humidity, fluid: self.fluid(row)?, u })
     }
 
+    /// Whether a cell without which there is no reading is empty: a sensor that said nothing.
+    ///
+    /// * `row`: of the table this plan was made for
+    pub fn is_silent(&self, row: &Row<'_>) -> bool {
+        let line = match self.line {
+            LineColumns::Absolute { index, .. } => [index, index],
+            LineColumns::Gauge { gauge, barometric, .. } => [gauge, barometric],
+        };
+        let empty = |index: usize| row.raw().get(index).is_none_or(|cell| cell.trim_ascii().is_empty());
+        [self.pressure_drop, self.temperature].into_iter().chain(line).any(empty)
+    }
+
     /// States the first value of a reading that probably stands in the wrong unit.
     ///
     /// * `row`: the row
