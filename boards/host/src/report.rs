@@ -4,16 +4,16 @@
 //! `report/page.html` with every value escaped; figures are drawn by the modules below and hold no text of the user's
 //! that has not been escaped.
 
-mod axis;
+pub(crate) mod axis;
 mod characteristic;
-mod figure;
-mod key;
+pub(crate) mod figure;
+pub(crate) mod key;
 mod label;
-mod numbers;
-mod range;
+pub(crate) mod numbers;
+pub(crate) mod range;
 mod residuals;
 mod tables;
-mod words;
+pub(crate) mod words;
 
 use crate::calibrate::outcome::{Calibration, Finding, UncertaintyRow};
 use figure::Rendition;
@@ -22,7 +22,8 @@ use numbers::MISSING;
 use residuals::LITRES_PER_MINUTE;
 
 const PAGE: &str = include_str!("report/page.html");
-const STYLE: &str = include_str!("report/style.css");
+/// Style of every page and figure.
+pub(crate) const STYLE: &str = include_str!("report/style.css");
 
 /// Where a report comes from: what ran, on what, and what it wrote.
 #[derive(Debug, Clone, PartialEq, Eq, Default)]

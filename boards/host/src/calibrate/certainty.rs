@@ -92,7 +92,13 @@ fn budget_at(
         let a = f64::from(record.element.a());
         let effect = (shift.shift[0] / a + shift.shift[1] / a * x) * mu_s;
         let unit = if shift.cause == Cause::Temperature { "K" } else { "rel" };
-        lines.push((format!("{} (bench)", shift.cause.name().replace('-', " ")), "common", shift.u, unit, effect / shift.u));
+        lines.push((
+            format!("{} (bench)", shift.cause.name().replace('-', " ")),
+            "common",
+            shift.u,
+            unit,
+            effect / shift.u,
+        ));
     }
     lines.push(("pressure drop, zero and noise".into(), "sensors", u(sensors.pressure_drop_pa), "Pa", drop_s / drop));
     lines.push(("pressure drop, gain".into(), "sensors", u(sensors.pressure_drop_rel), "rel", drop_s));

@@ -64,7 +64,9 @@ fn too_few(run: &Run<'_>) -> Option<Finding> {
     let n = run.samples.len();
     let [least, plenty] = FEWEST;
     (n < plenty).then(|| {
-        let message = format!("The run has {n} points: {least} are the least for a calibration, {plenty} or more let errors show");
+        let message = format!(
+            "The run has {n} points: {least} are the least for a calibration, {plenty} or more let errors show"
+        );
         finding("too-few-points", Vec::new(), n < least, message)
     })
 }
@@ -271,7 +273,8 @@ fn geometry(run: &Run<'_>, explained: bool) -> Option<Finding> {
     let [a0, b0] = run.nominal?;
     let (a, b) = (run.solution.a / a0, run.solution.b / b0);
     let [limit_a, limit_b] = GEOMETRY_LIMITS;
-    let (off_a, off_b) = ((a - 1.0).abs() > limit_a, !explained && run.solution.prior.is_none() && (b - 1.0).abs() > limit_b);
+    let (off_a, off_b) =
+        ((a - 1.0).abs() > limit_a, !explained && run.solution.prior.is_none() && (b - 1.0).abs() > limit_b);
     (off_a || off_b).then(|| {
         let message = format!(
             "A is {a:.3} and B is {b:.3} of what the drawing gives (limits 1 +- {limit_a:.2} and 1 +- {limit_b:.2}): the \

@@ -91,7 +91,9 @@ pub fn run(arguments: &Arguments) -> Result<Ended, Problem> {
         }
         let reading = plan.reading(&row)?;
         // A wrong unit shows in the first row; later ones are a sensor's own affair, and have their status.
-        if std::mem::take(&mut first) && let Some(doubt) = plan.doubt(&row, &reading) {
+        if std::mem::take(&mut first)
+            && let Some(doubt) = plan.doubt(&row, &reading)
+        {
             eprintln!("evenbore: {doubt}");
         }
         let meter = meters.of(&row, &plan, reading.fluid)?;

@@ -3,6 +3,10 @@
 pub mod calibrate;
 pub mod flow;
 pub mod fluid;
+mod fluid_build;
+pub mod plan;
+pub mod predict;
+pub mod size;
 
 use clap::Args;
 use evenbore::quantity::{AbsolutePressure, Temperature};
