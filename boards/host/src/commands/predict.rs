@@ -1,6 +1,6 @@
 //! `evenbore predict`: what a calibrated element is worth on another fluid, at another temperature and pressure.
 
-use super::{Ended, SensorOptions, json, print};
+use super::{Ended, SensorOptions, json, print, wrapped};
 use clap::Args;
 use evenbore::Record;
 use evenbore::fluid::StoredFluid;
@@ -36,7 +36,8 @@ pub struct Arguments {
     /// Relative humidity of air, as 50pct
     #[arg(long, value_name = "RH", value_parser = humidity)]
     relative_humidity: Option<f64>,
-    /// Largest pressure drop of interest; that of the largest calibrated flow if not given
+    /// Largest pressure drop of interest; if not given, that of the largest calibrated flow, on this fluid or on that
+    /// of the calibration, whichever is less
     #[arg(long, value_name = "P", value_parser = pressure_drop)]
     pressure_drop: Option<f64>,
     /// Points of the curve
@@ -187,7 +188,7 @@ fn as_text(arguments: &Arguments, question: &Question<'_>, prediction: &Predicti
 }
 
 fn budget_text(budget: &Budget) -> String {
-    let heading = if budget.at == 1.0 { "full scale".into() } else { format!("{:.0} % of it", 100.0 * budget.at) };
+    let heading = if budget.at == 1.0 { "full scale".to_string() } else { "10 % of that drop".to_string() };
     let mut text = format!(
         "\nAt {heading}, {:.2} Pa: U = {:.3} % (k = {:.2})\n  {:<40}{:>8}{:>7}\n",
         budget.pressure_drop,
@@ -210,12 +211,8 @@ fn budget_text(budget: &Budget) -> String {
         )
     };
     budget.sources.iter().for_each(|source| text.push_str(&row(source)));
-    let _ = write!(
-        text,
-        "  {:<40}{:>8.4}\n  Largest: {}",
-        "combined (root of the sum of squares)",
-        100.0 * budget.combined_rel,
-        budget.dominant
-    );
+    let words = "combined (root of the sum of squares)";
+    let _ = writeln!(text, "  {words:<40}{:>8.4}", 100.0 * budget.combined_rel);
+    text += &wrapped(&format!("Largest: {}", budget.dominant), 4);
     text
 }

@@ -1,6 +1,6 @@
 //! `evenbore size`: elements for a flow and a pressure drop, as a designer would weigh them.
 
-use super::{Ended, SensorOptions, json, print};
+use super::{Ended, SensorOptions, json, print, wrapped};
 use clap::{Args, ValueEnum};
 use evenbore::reading::SensorUncertainty;
 use evenbore_bench::input::problem::Problem;
@@ -40,8 +40,8 @@ pub struct Arguments {
     /// Most tubes or slots in parallel
     #[arg(long, value_name = "N", default_value = "500", value_parser = clap::value_parser!(u32).range(1..=1_000_000))]
     most_channels: u32,
-    /// Most designs to show
-    #[arg(long, value_name = "N", default_value = "8", value_parser = clap::value_parser!(u32).range(1..=1000))]
+    /// Most designs of each shape to show
+    #[arg(long, value_name = "N", default_value = "5", value_parser = clap::value_parser!(u32).range(1..=1000))]
     most: u32,
     /// Reference flow of the calibration to come: standard uncertainty that all points share
     #[arg(long, value_name = "U", default_value = "0.15pct", value_parser = parse_share)]
@@ -141,9 +141,10 @@ pub fn run(arguments: &Arguments) -> Result<Ended, Problem> {
     if list.designs.is_empty() {
         return Err(none(&list));
     }
-    list.designs.truncate(arguments.most as usize);
+    list.keep(arguments.most as usize);
+    let picked = picked(arguments, &list)?;
     if let Some(path) = &arguments.element_out {
-        write_whole(path, as_toml(&picked(arguments, &list)?.file).as_bytes())?;
+        write_whole(path, as_toml(&picked.file).as_bytes())?;
     }
     let text = if arguments.json { json(&summary(&task, &list))? } else { as_text(arguments, &task, &list) };
     let to_stdout = arguments.element_out.as_deref().is_some_and(|path| path.as_os_str() == "-");
@@ -216,13 +217,13 @@ fn as_text(arguments: &Arguments, task: &Task<'_>, list: &Shortlist) -> String {
     for (i, design) in list.designs.iter().enumerate() {
         line(block(i + 1, design));
     }
-    line(format!("{} candidates, {} accepted; best of each bore or gap.", list.candidates, list.accepted));
-    line("Sorted by: U at 10 % of full scale in steps of 0.05 %,\nthen fewer channels, then shorter.".into());
+    line(format!("{} candidates, {} accepted; the best of each bore or gap,", list.candidates, list.accepted));
+    line("by shape; U at 10 % of flow in steps of 0.05 %; fewer\nchannels; shorter length.".into());
     line("Rejected:".into());
     for row in rejected(list) {
-        line(format!("  {:>5}  {}", row.count, row.reason));
+        line(wrapped(&format!("{} {}", row.count, row.reason), 4));
     }
-    line("Bores, gaps, walls and widths are common practice. U is\nexpanded (k = 2), after a calibration, sensors included.".into());
+    line("Bores, gaps, walls and widths are common practice. U is\nexpanded (k = 2), after a calibration, sensors included.\nReading %/K: error per kelvin if not compensated.".into());
     if let Some(path) = &arguments.element_out {
         line(format!("Design {} is in {}", arguments.pick, path.display()));
     }
@@ -248,7 +249,7 @@ fn block(number: usize, d: &Design) -> String {
     let about = if d.bore_mm.is_some() { "bundle, diameter x length" } else { "stack" };
     format!(
         "{number:>2}  {sizes}\n    Re {:.0} (margin {:.0} %), kinetic loss {:.1} %, L/D {:.0}\n    slip {:.2} %, ln(p1/p2) \
-         {:.4}, drift {:+.3} %/K\n    U at 100/30/10/3 % of flow: {} %\n    open area {:.2} mm2\n    {about}: {} mm\n",
+         {:.4}, reading {:+.3} %/K\n    U at 100/30/10/3 % of flow: {} %\n    open area {:.2} mm2\n    {about}: {} mm\n",
         d.reynolds,
         percent(d.reynolds_margin),
         percent(d.kinetic_share),

@@ -90,7 +90,7 @@ pub fn budget(meter: &Meter<'_>, known: &Known<'_>, state: &State, at: f64, drop
     sources.extend(known.quality.common.iter().filter(counts).map(|part| shared(part, &flow)));
     let mu = f64::from(flow.sensitivities.viscosity);
     let of_fluid = if known.same_fluid {
-        format!("viscosity of {} here over that at calibration", meter.fluid().name())
+        "viscosity ratio over temperature".into()
     } else {
         format!("viscosity data of {}", meter.fluid().name())
     };

@@ -101,7 +101,8 @@ pub struct Design {
     pub slip_share: f64,
     /// ln(p1/p2) at full scale.
     pub log_pressure_ratio: f64,
-    /// Relative change of the reading per kelvin when temperature is not compensated, at full scale.
+    /// Relative error of the flow reading per kelvin that the element is warmer, when temperature is not compensated; at
+    /// full scale.
     #[serde(rename = "uncompensated_per_K")]
     pub per_kelvin: f64,
     /// Expected uncertainty over the range.
@@ -275,7 +276,8 @@ fn at(task: &Task<'_>, element: &Element, ends: &[FullScale], share: f64) -> Opt
 fn per_kelvin(task: &Task<'_>, element: &Element, ends: &[FullScale]) -> Option<f64> {
     let one = |end: &FullScale| {
         let flow = meter(task, element, 1.0)?.flow(&end.state.reading(end.drop)).ok()?;
-        Some(f64::from(flow.sensitivities.temperature))
+        // What the computed flow would have fallen by is what the uncompensated one reads too high.
+        Some(-f64::from(flow.sensitivities.temperature))
     };
     let all = ends.iter().map(one).collect::<Option<Vec<f64>>>()?;
     all.into_iter().max_by(|p, q| p.abs().total_cmp(&q.abs()))

@@ -4,7 +4,7 @@ pub use crate::input::fluids_file::USUAL_RESIDUAL as USUAL_LIMIT;
 use crate::input::fluids_file::{self, DeclaredFluid, NamedFluid};
 use crate::input::problem::Problem;
 use crate::input::toml_text::TomlText;
-use crate::resources::fluids::stored;
+use crate::resources::fluids::{check_rows, stored};
 use evenbore::double::Properties;
 use evenbore::fluid::StoredFluid;
 use serde::Serialize;
@@ -102,6 +102,7 @@ impl Declaration<'_> {
                 return Err(self.missed(residual, what));
             }
         }
+        check_rows(named, &fluid)?;
         Ok(Built { stanza, fluid, rows, residuals })
     }
 

@@ -13,6 +13,8 @@ const STEPS: usize = 96;
 const HEIGHT: f64 = 320.0;
 /// Ratio of largest to smallest value above which the axis is logarithmic.
 const WIDE: f64 = 6.0;
+/// Share of the axis below which a band is hidden by the line.
+const VISIBLE: f64 = 0.01;
 
 /// Style of a drawing that stands alone.
 const STYLE: &str = "\
@@ -29,6 +31,7 @@ struct Panel<'a> {
     left: f64,
     title: &'a str,
     values: Vec<(f64, f64)>,
+    logarithmic: bool,
 }
 
 /// Draws the fluid's viscosity at an absolute pressure (Pa), as an SVG file.
@@ -43,19 +46,23 @@ pub fn draw(fluid: &StoredFluid, pressure: f64) -> String {
     let about = "Dynamic and kinematic viscosity over temperature, with the expanded uncertainty of the stored values.";
     let mut figure = Figure::new("viscosity", Rendition::Wide, HEIGHT, &title, about);
     let u = f64::from(fluid.u_viscosity());
-    let band = format!("expanded uncertainty, ±{} %", numbers::percent(2.0 * u));
-    let name = format!("{} at {} kPa absolute", fluid.name(), numbers::significant(pressure / 1e3, 6));
-    let key = Key::new(vec![(Sign::Line("fitted"), &name), (Sign::Area("band-fit"), &band)], Rendition::Wide.width());
-    key.draw(&mut figure);
+    let mut band = format!("expanded uncertainty, ±{} %", numbers::percent(2.0 * u));
     let at = |of: fn(&Properties, f64) -> f64| sampled(fluid, |t| of(&Properties::at(fluid, t), pressure));
     let dynamic = at(|properties, p| properties.viscosity(p) * 1e6);
     let kinematic = at(|properties, p| properties.viscosity(p) / properties.density(p) * 1e6);
-    let milli = dynamic.iter().any(|(_, v)| *v > 1e3);
+    let (low, high) = limits(&dynamic);
+    if 4.0 * u * high < VISIBLE * (high - low) {
+        band += ", thinner than the line";
+    }
+    let name = format!("{} at {} kPa absolute", fluid.name(), numbers::significant(pressure / 1e3, 6));
+    let key = Key::new(vec![(Sign::Line("fitted"), &name), (Sign::Area("band-fit"), &band)], Rendition::Wide.width());
+    key.draw(&mut figure);
+    let (milli, logarithmic) = (high > 1e3, low > 0.0 && high / low > WIDE);
     let dynamic = if milli { dynamic.into_iter().map(|(t, v)| (t, v / 1e3)).collect() } else { dynamic };
     let title = if milli { "dynamic viscosity, mPa s" } else { "dynamic viscosity, μPa s" };
-    panel(&mut figure, key.height(), u, &Panel { left: 48.0, title, values: dynamic });
+    panel(&mut figure, key.height(), u, &Panel { left: 48.0, title, values: dynamic, logarithmic });
     let title = "kinematic viscosity, mm^{2}/s";
-    panel(&mut figure, key.height(), u, &Panel { left: 418.0, title, values: kinematic });
+    panel(&mut figure, key.height(), u, &Panel { left: 418.0, title, values: kinematic, logarithmic });
     figure.finish_alone(STYLE)
 }
 
@@ -66,12 +73,16 @@ fn sampled(fluid: &StoredFluid, value: impl Fn(f64) -> f64) -> Vec<(f64, f64)> {
     (0..=STEPS).map(at).map(|t| (t - 273.15, value(t))).collect()
 }
 
+/// Smallest and largest value.
+fn limits(values: &[(f64, f64)]) -> (f64, f64) {
+    values.iter().fold((f64::INFINITY, 0.0), |(low, high), (_, v)| (low.min(*v), high.max(*v)))
+}
+
 fn panel(figure: &mut Figure, key: f64, u: f64, panel: &Panel<'_>) {
-    let values = panel.values.iter().map(|(_, v)| *v);
-    let (low, high) = values.fold((f64::INFINITY, 0.0_f64), |(low, high), v| (low.min(v), high.max(v)));
+    let (low, high) = limits(&panel.values);
     let (Some((from, _)), Some((to, _))) = (panel.values.first(), panel.values.last()) else { return };
     let margin = 0.05 * (high - low);
-    let y = if low > 0.0 && high / low > WIDE {
+    let y = if panel.logarithmic {
         Axis::logarithmic(low / 1.15, high * 1.15)
     } else {
         Axis::linear(low - margin, high + margin, 6)

@@ -25,7 +25,7 @@ pub struct Question<'a> {
     pub state: State,
     /// Sensors in use.
     pub sensors: SensorUncertainty,
-    /// Largest pressure drop, Pa; that of the calibrated range if absent.
+    /// Largest pressure drop, Pa; that of the largest calibrated flow, here or at calibration, if absent.
     pub full_scale: Option<f64>,
     /// Points of the curve, 2 or more.
     pub points: usize,
@@ -79,14 +79,25 @@ impl<'a> Question<'a> {
         Known { quality: &self.record.quality, same_fluid, trims: self.record.trims }
     }
 
-    /// Pressure drop (Pa) at the largest calibrated x.
+    /// Pressure drop (Pa) at the largest calibrated x, on this fluid or on that of the calibration, whichever is less:
+    /// neither the calibrated range nor that of the pressure-drop sensor is left.
     fn calibrated_drop(&self) -> Result<f64, Refusal> {
-        let law = self.state.law(&self.record.element, self.fluid)?;
+        let there = f64::from(self.record.quality.temperature_k.as_kelvin());
+        let calibration = self.drop_at_largest(&self.record.fluid, &State::dry(there, self.state.line_pressure));
+        let here = self.drop_at_largest(self.fluid, &self.state);
+        match (here, calibration) {
+            (Ok(here), Ok(there)) => Ok(here.min(there)),
+            (here, there) => here.or(there),
+        }
+    }
+
+    fn drop_at_largest(&self, fluid: &StoredFluid, state: &State) -> Result<f64, Refusal> {
+        let law = state.law(&self.record.element, fluid)?;
         let x = f64::from(self.record.quality.x_max_m);
         // x counts viscosity at the mean pressure; three rounds find it to 1e-9.
         let mut drop = 0.0;
         for _ in 0..3 {
-            drop = law.pressure_drop(x * law.viscosity(self.state.line_pressure - 0.5 * drop))?;
+            drop = law.pressure_drop(x * law.viscosity(state.line_pressure - 0.5 * drop))?;
         }
         Ok(drop)
     }

@@ -117,7 +117,7 @@ fn group(budget: &Budget) -> Value {
     let heading = match budget.at {
         1.0 => format!("Full scale, {} Pa", numbers::significant(budget.pressure_drop, 4)),
         at => format!(
-            "{} % of the pressure drop at full scale, {} Pa",
+            "{} % of full scale in pressure drop, {} Pa",
             numbers::freedom(100.0 * at),
             numbers::significant(budget.pressure_drop, 4)
         ),
@@ -128,7 +128,7 @@ fn group(budget: &Budget) -> Value {
         combined => numbers::fixed(100.0 * budget.combined_rel, place),
         expanded => numbers::percent(budget.expanded_rel),
         factor => numbers::fixed(budget.coverage_factor, 2),
-        dominant => words::capitalised(&budget.dominant),
+        dominant => budget.dominant.as_str(),
     }
 }
 
@@ -182,6 +182,6 @@ fn curve(rows: &[Row], rendition: Rendition) -> String {
     }
     let (x, y) = at(last);
     let text = format!("Re {}", numbers::fixed(f64::from(last.flow.reynolds), 0));
-    figure.text((x - 10.0, y + 20.0), Anchor::End, "note halo", &text);
+    figure.text((x, y + 34.0), Anchor::End, "note halo", &text);
     figure.finish()
 }

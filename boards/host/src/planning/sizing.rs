@@ -20,7 +20,7 @@ const UNCERTAINTY_STEP: f64 = 5e-4;
 
 /// How the shortlist is sorted.
 pub const ORDER: &str =
-    "expanded uncertainty at 10 % of full scale in steps of 0.05 %, then fewer channels, then shorter";
+    "shape; expanded uncertainty at 10 % of full scale in steps of 0.05 %, then fewer channels, then shorter";
 
 /// Shapes to look at.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -29,6 +29,18 @@ pub struct Shapes {
     pub tubes: bool,
     /// Parallel plates.
     pub plates: bool,
+}
+
+impl Shortlist {
+    /// Keeps the first `most` designs of each shape.
+    pub fn keep(&mut self, most: usize) {
+        let mut kept: BTreeMap<&str, usize> = BTreeMap::new();
+        self.designs.retain(|design| {
+            let count = kept.entry(design.shape).or_default();
+            *count += 1;
+            *count <= most
+        });
+    }
 }
 
 /// What an element is sized for.
@@ -101,9 +113,14 @@ pub fn shortlist(task: &Task<'_>) -> Shortlist {
 }
 
 /// Sorting key: see [`ORDER`].
-fn rank(design: &Design) -> (u64, u32, u64) {
+fn rank(design: &Design) -> (bool, u64, u32, u64) {
     let tenth = design.uncertainty.iter().find(|at| at.share == 0.1).map_or(1.0, |at| at.expanded_rel);
-    ((tenth / UNCERTAINTY_STEP).round() as u64, design.count, (design.length_mm * 10.0) as u64)
+    (
+        design.bore_mm.is_none(),
+        (tenth / UNCERTAINTY_STEP).round() as u64,
+        design.count,
+        (design.length_mm * 10.0) as u64,
+    )
 }
 
 /// A candidate before the law has spoken: shape of one channel, and the length looked at first.

@@ -167,7 +167,10 @@ impl Table<'_> {
 }
 
 /// Refuses a table whose stored curves miss its own rows, and gas rows that the molar mass contradicts.
-fn check_rows(declared: &NamedFluid, fluid: &StoredFluid) -> Result<(), Problem> {
+///
+/// # Errors
+/// Names the line, the value and the limit.
+pub fn check_rows(declared: &NamedFluid, fluid: &StoredFluid) -> Result<(), Problem> {
     let DeclaredFluid::Table { data, rows, molar_mass_g_mol, pressure_kpa, residual_limit } = &declared.fluid else {
         return Ok(());
     };
