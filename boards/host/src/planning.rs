@@ -18,7 +18,11 @@ pub mod bench; // a bench run before it is made
 
 pub mod spacing; // where set-points may lie
 
-pub mod schedule; // the fewest points that reach a target
+pub mod schedule; // what is asked of a calibration, and a plan for it
+
+mod search; // the fewest points that reach a target
+
+pub mod planner; // the plan, or why there is none
 
 pub mod points_file; // the plan as a points file to fill in
 

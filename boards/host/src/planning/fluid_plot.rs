@@ -81,6 +81,7 @@ fn limits(values: &[(f64, f64)]) -> (f64, f64) {
 fn panel(figure: &mut Figure, key: f64, u: f64, panel: &Panel<'_>) {
     let (low, high) = limits(&panel.values);
     let (Some((from, _)), Some((to, _))) = (panel.values.first(), panel.values.last()) else { return };
+    let (low, high) = (low * (1.0 - 2.0 * u), high * (1.0 + 2.0 * u));
     let margin = 0.05 * (high - low);
     let y = if panel.logarithmic {
         Axis::logarithmic(low / 1.15, high * 1.15)

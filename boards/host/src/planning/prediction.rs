@@ -14,6 +14,9 @@ pub const BUDGET_AT: [f64; 2] = [1.0, 0.1];
 /// Flows below this share of full scale are not predicted.
 const LOWEST_SHARE: f64 = 0.01;
 
+/// The curve covers a decade at least.
+const LARGEST_LOW: f64 = 0.1;
+
 /// What is asked.
 #[derive(Debug, Clone, Copy)]
 pub struct Question<'a> {
@@ -126,12 +129,13 @@ impl<'a> Question<'a> {
         Ok(Row { pressure_drop: drop, flow, coverage_factor: coverage(&flow, &self.record.quality) })
     }
 
-    /// Pressure drops (Pa) of the curve: geometric in flow, from the smallest calibrated one to full scale.
+    /// Pressure drops (Pa) of the curve: geometric in flow, from the smallest calibrated one (or a tenth, where that is
+    /// more) to full scale.
     fn drops(&self, full: f64) -> Result<Vec<f64>, Refusal> {
         let law = self.state.law(&self.record.element, self.fluid)?;
         let largest = law.flow(full)?;
         let x_min = f64::from(self.record.quality.x_min_m);
-        let low = (x_min / largest.x).clamp(LOWEST_SHARE, 0.5);
+        let low = (x_min / largest.x).clamp(LOWEST_SHARE, LARGEST_LOW);
         let last = self.points.saturating_sub(1).max(1);
         let at = |i: usize| match i {
             i if i == last => Ok(single(full)),
