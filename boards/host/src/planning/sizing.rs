@@ -189,7 +189,7 @@ fn trimmed(task: &Task<'_>, channel: &Channel, count: u32) -> Result<f64, Reject
         let middle = 0.5 * (low + high);
         if too_long(middle) { high = middle } else { low = middle }
     }
-    Ok((low / LENGTH_STEP_MM).round() * LENGTH_STEP_MM).map(clean)
+    Ok(clean((low / LENGTH_STEP_MM).round() * LENGTH_STEP_MM))
 }
 
 /// A length without the digits that binary adds.
