@@ -1,9 +1,9 @@
 //! What a calibration says of an element beyond A and B: how sure they are, how far they reach.
 //!
 //! Uncertainties are kept relative to A, so that no square of A (up to 1e20 1/m3 for one fine capillary) can
-//! overflow single precision: `u_A/A` without unit and `u_B/A` in metres, since `B x/A` is the kinetic share.
+//! overflow single precision: `u_A/A` without unit and `u_B/A` per metre, since `B x/A` is the kinetic share and x is a length.
 
-use crate::error::{Error, within};
+use crate::error::{Error, Limit, all_within, within};
 use crate::quantity::Temperature;
 use heapless::Vec;
 
@@ -65,7 +65,7 @@ pub struct CommonPart {
     pub cause: Cause,
     /// Change of A over A.
     pub effect_a: f32,
-    /// Change of B over A, m.
+    /// Change of B over A, 1/m.
     pub effect_b_m: f32,
 }
 
@@ -76,7 +76,7 @@ pub struct CommonPart {
 pub struct Quality {
     /// Standard uncertainty of A from the fit, over A.
     pub u_a: f32,
-    /// Standard uncertainty of B from the fit, over A, m.
+    /// Standard uncertainty of B from the fit, over A, 1/m.
     pub u_b_m: f32,
     /// Correlation of A and B in the fit.
     pub correlation: f32,
@@ -102,15 +102,17 @@ impl Quality {
     pub fn nominal(a: f32, b: f32) -> Self {
         let [limit_a, limit_b] = NOMINAL_LIMITS;
         let parts = [(limit_a * RECTANGULAR, 0.0), (0.0, limit_b * RECTANGULAR * (b / a))];
+        let mut common = Vec::new();
+        for (effect_a, effect_b_m) in parts {
+            // There is room for both; collecting them would leave a panic in firmware optimised for size.
+            let _ = common.push(CommonPart { cause: Cause::Geometry, effect_a, effect_b_m });
+        }
         Self {
             u_a: 0.0,
             u_b_m: 0.0,
             correlation: 0.0,
             degrees_of_freedom: 0.0,
-            common: parts
-                .into_iter()
-                .map(|(effect_a, effect_b_m)| CommonPart { cause: Cause::Geometry, effect_a, effect_b_m })
-                .collect(),
+            common,
             x_min_m: 0.0,
             x_max_m: 0.0,
             temperature_k: Temperature::from_celsius(20.0),
@@ -122,16 +124,21 @@ impl Quality {
     /// # Errors
     /// Names the field that is not finite or outside its limits.
     pub fn check(&self) -> Result<(), Error> {
-        within("u of a (rel)", self.u_a, 0.0, 10.0)?;
-        within("u of b over a (m)", self.u_b_m, 0.0, 1e6)?;
-        within("correlation", self.correlation, -1.0, 1.0)?;
-        within("degrees of freedom", self.degrees_of_freedom, 0.0, 1e9)?;
-        within("largest x (m)", self.x_max_m, 0.0, 1e9)?;
+        const LIMITS: [Limit; 6] = [
+            ("u of a (rel)", 0.0, 10.0),
+            ("u of b over a (1/m)", 0.0, 1e6),
+            ("correlation", -1.0, 1.0),
+            ("degrees of freedom", 0.0, 1e9),
+            ("largest x (m)", 0.0, 1e9),
+            ("calibration temperature (K)", 100.0, 1000.0),
+        ];
+        const COMMON: [Limit; 2] =
+            [("common effect on a (rel)", -10.0, 10.0), ("common effect on b over a (1/m)", -1e6, 1e6)];
+        let t = self.temperature_k.as_kelvin();
+        all_within(&LIMITS, [self.u_a, self.u_b_m, self.correlation, self.degrees_of_freedom, self.x_max_m, t])?;
         within("smallest x (m)", self.x_min_m, 0.0, self.x_max_m)?;
-        within("calibration temperature (K)", self.temperature_k.as_kelvin(), 100.0, 1000.0)?;
         for part in &self.common {
-            within("common effect on a (rel)", part.effect_a, -10.0, 10.0)?;
-            within("common effect on b over a (m)", part.effect_b_m, -1e6, 1e6)?;
+            all_within(&COMMON, [part.effect_a, part.effect_b_m])?;
         }
         Ok(())
     }

@@ -2,10 +2,11 @@
 //!
 //! Everything here is SI in plain `f64`. The tables and constants are those the device stores.
 
-use crate::conditions::State;
 use crate::element::Element;
+use crate::element::law::Channels;
 use crate::fluid::StoredFluid;
 use crate::fluid::properties::PropertiesAt;
+use crate::state::State;
 use crate::status::Refusal;
 
 /// Fluid properties at one temperature.
@@ -29,7 +30,7 @@ impl Properties {
     }
     /// dln mu/dln T.
     pub fn viscosity_exponent(&self) -> f64 {
-        self.at.exponent
+        self.at.exponent()
     }
 }
 
@@ -82,7 +83,7 @@ impl Conditions {
         line_pressure: f64,
         humidity: Option<f64>,
     ) -> Result<Self, Refusal> {
-        Ok(Self { state: State::new(element, fluid, temperature, line_pressure, humidity)? })
+        Ok(Self { state: State::new(&Channels::new(element), fluid, temperature, line_pressure, humidity)? })
     }
 
     /// The flow that a pressure drop (Pa) drives.
@@ -150,6 +151,6 @@ impl Conditions {
 
     /// dln mu/dln T at the conditions' temperature.
     pub fn viscosity_exponent(&self) -> f64 {
-        self.state.law.fluid.exponent
+        self.state.law.fluid.exponent()
     }
 }

@@ -5,21 +5,19 @@
 //! the [`Conditions`] and calls [`Conditions::sample`] for each pressure drop.
 
 use crate::calibration::Quality;
-use crate::conditions::State;
+use crate::conditions::{Conditions, Sample};
 use crate::element::Element;
-use crate::element::law::Solution;
+use crate::element::law::Channels;
 use crate::error::Error;
+use crate::flow_curve::{Arithmetic, by_curve};
 use crate::fluid::StoredFluid;
 use crate::fluid::properties::{PropertiesAt, outside};
-use crate::math::Real;
-use crate::quantity::{
-    AbsolutePressure, Density, MassFlow, PressureDrop, RelativeHumidity, Temperature, Viscosity, VolumeFlow,
-};
+use crate::quantity::{AbsolutePressure, RelativeHumidity, Temperature};
 use crate::reading::{Reading, SensorUncertainty, Trims};
 use crate::reference::ReferenceConditions;
-use crate::regime::{LAMINAR_LIMIT, LARGEST_EXPANSION, RANGE_MARGIN, SLIP_LIMIT, judge};
+use crate::state::State;
 use crate::status::{Refusal, Status};
-use crate::uncertainty::{Sensitivities, Uncertainty, combine, common_part, fit_part, sensitivities, sensor_part};
+use crate::uncertainty::{Sensitivities, Uncertainty, common_part, fit_part, sensor_part};
 
 /// Kelvin over which a viscosity ratio's uncertainty grows from nothing to its stated value.
 const RATIO_SPAN: f32 = 50.0;
@@ -47,13 +45,17 @@ const RATIO_SPAN: f32 = 50.0;
 #[derive(Debug, Clone)]
 pub struct Meter<'a> {
     element: Element,
+    channels: Channels<f32>,
     fluid: &'a StoredFluid,
     quality: Quality,
     calibrated_on_this_fluid: bool,
     trims: Trims,
     sensors: SensorUncertainty,
     reference: ReferenceConditions,
+    /// Dry volume of a kilogram at the reference conditions, m3/kg; 0 where the fluid's table does not reach.
+    standard_volume: f32,
     standing: Status,
+    arithmetic: Arithmetic,
 }
 
 impl<'a> Meter<'a> {
@@ -63,8 +65,8 @@ impl<'a> Meter<'a> {
     /// Names the field of the element or fluid that makes no sense.
     pub fn nominal(element: Element, fluid: &'a StoredFluid) -> Result<Self, Error> {
         let quality = Quality::nominal(element.a, element.b);
-        let meter = Self::calibrated(element, fluid, quality)?;
-        Ok(Self { calibrated_on_this_fluid: false, standing: Status::UNCALIBRATED, ..meter })
+        check(&element, fluid, &quality)?;
+        Ok(Self::of_checked(element, fluid, quality, false, Status::UNCALIBRATED))
     }
 
     /// A calibrated meter, used on the fluid it was calibrated on.
@@ -72,19 +74,32 @@ impl<'a> Meter<'a> {
     /// # Errors
     /// Names the field of the element, fluid or calibration that makes no sense.
     pub fn calibrated(element: Element, fluid: &'a StoredFluid, quality: Quality) -> Result<Self, Error> {
-        element.check()?;
-        fluid.check()?;
-        quality.check()?;
-        Ok(Self {
+        check(&element, fluid, &quality)?;
+        Ok(Self::of_checked(element, fluid, quality, true, Status::empty()))
+    }
+
+    /// A meter of parts that were found to make sense.
+    pub(crate) fn of_checked(
+        element: Element,
+        fluid: &'a StoredFluid,
+        quality: Quality,
+        calibrated_on_this_fluid: bool,
+        standing: Status,
+    ) -> Self {
+        let reference = ReferenceConditions::DIN_1343;
+        Self {
             element,
+            channels: Channels::new(&element),
             fluid,
             quality,
-            calibrated_on_this_fluid: true,
+            calibrated_on_this_fluid,
             trims: Trims::NONE,
             sensors: SensorUncertainty::COMMON,
-            reference: ReferenceConditions::DIN_1343,
-            standing: Status::empty(),
-        })
+            reference,
+            standard_volume: standard_volume(fluid, &reference),
+            standing,
+            arithmetic: Arithmetic::Single,
+        }
     }
 
     /// The same meter carrying another fluid.
@@ -94,12 +109,13 @@ impl<'a> Meter<'a> {
     pub fn with_fluid<'b>(self, fluid: &'b StoredFluid) -> Result<Meter<'b>, Error> {
         fluid.check()?;
         let same = self.calibrated_on_this_fluid && fluid == self.fluid;
-        Ok(Meter { fluid, calibrated_on_this_fluid: same, ..self })
+        let standard_volume = standard_volume(fluid, &self.reference);
+        Ok(Meter { fluid, calibrated_on_this_fluid: same, standard_volume, ..self })
     }
 
     /// The same meter quoting standard flow at other reference conditions.
     pub fn with_reference(self, reference: ReferenceConditions) -> Self {
-        Self { reference, ..self }
+        Self { reference, standard_volume: standard_volume(self.fluid, &reference), ..self }
     }
 
     /// The same meter with trims and uncertainties of its sensors.
@@ -121,6 +137,11 @@ impl<'a> Meter<'a> {
         self.with_sensors(trims, sensors)
     }
 
+    /// The same meter computing by another arithmetic.
+    pub fn with_arithmetic(self, arithmetic: Arithmetic) -> Self {
+        Self { arithmetic, ..self }
+    }
+
     /// The same meter with a status that stands beside every flow.
     pub fn with_standing(self, standing: Status) -> Self {
         Self { standing, ..self }
@@ -137,6 +158,10 @@ impl<'a> Meter<'a> {
     /// Uncertainties of the sensors.
     pub fn sensors(&self) -> &SensorUncertainty {
         &self.sensors
+    }
+    /// The arithmetic that computes the flow.
+    pub fn arithmetic(&self) -> Arithmetic {
+        self.arithmetic
     }
     /// Conditions at which standard flow is quoted.
     pub fn reference(&self) -> &ReferenceConditions {
@@ -158,13 +183,22 @@ impl<'a> Meter<'a> {
     pub fn flow_with(&self, reading: &Reading, sensors: &SensorUncertainty) -> Result<Flow, Refusal> {
         let reading = self.trims.apply(reading);
         reading.check()?;
-        let conditions = self.conditions(reading.temperature, reading.line_pressure, reading.relative_humidity)?;
-        let solution = conditions.solve(reading.pressure_drop)?;
-        let sample = conditions.interpret(&solution);
-        let sensitivities = conditions.sensitivities(&solution, &reading);
-        let u_water = conditions.state.moisture.u_viscosity;
-        let u_viscosity = combine(self.u_viscosity(reading.temperature), u_water);
-        let uncertainty = self.uncertainty(&sensitivities, sensors, &reading, u_viscosity);
+        // Matched where it stands, since moving what was prepared would double the stack.
+        match &self.conditions(reading.temperature, reading.line_pressure, reading.relative_humidity) {
+            Ok(conditions) => self.answer(conditions, &reading, sensors),
+            Err(refusal) => Err(*refusal),
+        }
+    }
+
+    #[inline(never)] // its stack then lies where that of `conditions` lay, not on top of it
+    fn answer(&self, at: &Conditions, reading: &Reading, sensors: &SensorUncertainty) -> Result<Flow, Refusal> {
+        let solution = at.solve(reading.pressure_drop)?;
+        let sensitivities = at.sensitivities(&solution, reading);
+        let uncertainty = self.uncertainty(at, &sensitivities, reading, sensors);
+        let sample = match self.arithmetic {
+            Arithmetic::Single => at.interpret(&solution),
+            Arithmetic::Curve => by_curve(at, at.interpret(&solution), reading.pressure_drop)?,
+        };
         Ok(Flow { sample, sensitivities, uncertainty })
     }
 
@@ -191,34 +225,22 @@ impl<'a> Meter<'a> {
     ) -> Result<Conditions, Refusal> {
         let (t, p) = (temperature.as_kelvin(), line_pressure.as_pascals());
         let humidity = humidity.map(RelativeHumidity::as_fraction);
-        let state = State::new(&self.element, self.fluid, t, p, humidity)?;
+        let state = State::new(&self.channels, self.fluid, t, p, humidity)?;
         Ok(Conditions {
             state,
-            element: self.element,
-            standard_density: self.standard_density(),
+            reynolds_per_metre: self.channels.reynolds,
+            standard_volume: self.standard_volume * state.moisture.dry_share,
             x_calibrated: self.quality.x_max_m,
             standing: self.standing,
         })
     }
 
-    /// Density at the reference conditions, kg/m3; 0 where the fluid's table does not reach.
-    fn standard_density(&self) -> f32 {
-        let (t, p) = (self.reference.temperature.as_kelvin(), self.reference.pressure.as_pascals());
-        if outside(self.fluid, t, p).is_empty() { PropertiesAt::new(self.fluid, t).density(p) } else { 0.0 }
-    }
-
-    fn uncertainty(
-        &self,
-        s: &Sensitivities,
-        sensors: &SensorUncertainty,
-        reading: &Reading,
-        u_viscosity: f32,
-    ) -> Uncertainty {
-        let (drop, p) = (reading.pressure_drop.as_pascals(), reading.line_pressure.as_pascals());
+    fn uncertainty(&self, at: &Conditions, s: &Sensitivities, r: &Reading, sensors: &SensorUncertainty) -> Uncertainty {
+        let u_viscosity = [self.u_viscosity(r.temperature), at.u_viscosity_of_water()];
         Uncertainty {
             fit: fit_part(s, &self.quality),
             common: common_part(s, &self.quality, u_viscosity, self.calibrated_on_this_fluid),
-            sensors: sensor_part(s, sensors, drop, p),
+            sensors: sensor_part(s, sensors, r.pressure_drop.as_pascals(), r.line_pressure.as_pascals()),
         }
     }
 
@@ -234,118 +256,17 @@ impl<'a> Meter<'a> {
     }
 }
 
-/// The slow half of the walk: one temperature, one line pressure, one humidity.
-#[derive(Debug, Clone, Copy)]
-pub struct Conditions {
-    state: State<f32>,
-    element: Element,
-    standard_density: f32,
-    x_calibrated: f32,
-    standing: Status,
+fn check(element: &Element, fluid: &StoredFluid, quality: &Quality) -> Result<(), Error> {
+    element.check()?;
+    fluid.check()?;
+    quality.check()
 }
 
-impl Conditions {
-    /// The flow that a pressure drop (trimmed) drives.
-    ///
-    /// # Errors
-    /// Refuses a pressure drop that is not finite or leads to a pressure outside the fluid's table.
-    pub fn sample(&self, pressure_drop: PressureDrop) -> Result<Sample, Refusal> {
-        Ok(self.interpret(&self.solve(pressure_drop)?))
-    }
-
-    /// The pressure drop that drives a mass flow: the inverse of [`Conditions::sample`].
-    ///
-    /// # Errors
-    /// Refuses a mass flow that is not finite, or that no outlet pressure within the fluid's table can drive.
-    pub fn pressure_drop(&self, mass_flow: MassFlow) -> Result<PressureDrop, Refusal> {
-        let flow = mass_flow.as_kilograms_per_second();
-        if !flow.is_finite() {
-            return Err(Refusal::NOT_FINITE);
-        }
-        let drop = self.state.law.pressure_drop(flow).ok_or(Refusal::OUTLET_VACUUM)?;
-        self.state.check(drop)?;
-        Ok(PressureDrop::from_pascals(drop))
-    }
-
-    /// Flows and pressure drops from which each flag is raised, for arithmetic that does not know x.
-    pub(crate) fn limits(&self) -> Limits {
-        let law = &self.state.law;
-        let p1 = law.line_pressure;
-        let mu = law.fluid.viscosity(p1);
-        let volume = |x: f32| if x > 0.0 { x * mu / self.state.line_density } else { f32::INFINITY };
-        let per_x = self.element.reynolds(1.0);
-        let gas = law.compressible > 0.0;
-        Limits {
-            laminar: volume(if per_x > 0.0 { LAMINAR_LIMIT / per_x } else { 0.0 }),
-            range: volume(RANGE_MARGIN * self.x_calibrated),
-            expansion: if gas { p1 * LARGEST_EXPANSION } else { f32::INFINITY },
-            slip: if gas { (2.0 * (p1 - law.slip * mu / SLIP_LIMIT)).at_least(0.0) } else { f32::INFINITY },
-            standing: self.standing,
-        }
-    }
-
-    fn solve(&self, pressure_drop: PressureDrop) -> Result<Solution<f32>, Refusal> {
-        let drop = pressure_drop.as_pascals();
-        self.state.check(drop)?;
-        Ok(self.state.law.solve(drop))
-    }
-
-    fn interpret(&self, at: &Solution<f32>) -> Sample {
-        let mass = at.x * at.viscosity;
-        let dry = mass * self.state.moisture.dry_share;
-        let standard = if self.standard_density > 0.0 { Some(dry / self.standard_density) } else { None };
-        Sample {
-            volume: VolumeFlow::from_cubic_metres_per_second(mass / self.state.line_density),
-            mass: MassFlow::from_kilograms_per_second(mass),
-            standard: standard.map(VolumeFlow::from_cubic_metres_per_second),
-            viscosity: Viscosity::from_pascal_seconds(at.viscosity),
-            density: Density::from_kilograms_per_cubic_metre(self.state.line_density),
-            reynolds: self.element.reynolds(at.x),
-            kinetic_share: at.kinetic_share,
-            status: self.standing | judge(&self.element, self.x_calibrated, at),
-        }
-    }
-
-    fn sensitivities(&self, at: &Solution<f32>, reading: &Reading) -> Sensitivities {
-        let humidity = reading.relative_humidity.map_or(0.0, RelativeHumidity::as_fraction);
-        sensitivities(&self.state, at, reading.pressure_drop.as_pascals(), humidity)
-    }
-}
-
-/// See [`Conditions::limits`].
-pub(crate) struct Limits {
-    /// Volume flow at the laminar limit, m3/s.
-    pub laminar: f32,
-    /// Volume flow at the end of the calibrated range, m3/s.
-    pub range: f32,
-    /// Pressure drop at the expansion limit, Pa.
-    pub expansion: f32,
-    /// Pressure drop at the slip limit, Pa.
-    pub slip: f32,
-    /// Flags of every flow.
-    pub standing: Status,
-}
-
-/// A flow and its status; [`Flow`] adds the uncertainty.
-#[derive(Debug, Clone, Copy, PartialEq)]
-#[cfg_attr(feature = "defmt", derive(defmt::Format))]
-pub struct Sample {
-    /// Volume flow at the temperature and line pressure that were read.
-    pub volume: VolumeFlow,
-    /// Mass flow, of moist air with its water.
-    pub mass: MassFlow,
-    /// Volume flow at the reference conditions, dry; absent where the fluid's table does not reach them.
-    pub standard: Option<VolumeFlow>,
-    /// Viscosity at the mean pressure.
-    pub viscosity: Viscosity,
-    /// Density at the line pressure.
-    pub density: Density,
-    /// Reynolds number; 0 when the channels are unknown.
-    pub reynolds: f32,
-    /// Kinetic over viscous pressure drop.
-    pub kinetic_share: f32,
-    /// What the flow is worth.
-    pub status: Status,
+/// Dry volume of a kilogram at reference conditions, m3/kg; 0 where the fluid's table does not reach.
+#[inline(never)] // three callers, none in a hurry
+fn standard_volume(fluid: &StoredFluid, reference: &ReferenceConditions) -> f32 {
+    let (t, p) = (reference.temperature.as_kelvin(), reference.pressure.as_pascals());
+    if outside(fluid, t, p).is_empty() { 1.0 / PropertiesAt::new(fluid, t).density(p) } else { 0.0 }
 }
 
 /// A flow with status and uncertainty.

@@ -10,9 +10,20 @@
 //! Accuracy: 1 ppm of the double-precision law wherever the curve serves (asserted in `tests/flow_curve.rs`).
 //! Pressure drops that are negative, below 1e-30 Pa or beyond the curve are computed by [`Conditions::sample`].
 
-use crate::flow::{Conditions, Sample};
-use crate::quantity::{PressureDrop, VolumeFlow};
+use crate::conditions::{Conditions, Sample};
+use crate::quantity::{MassFlow, PressureDrop, VolumeFlow};
 use crate::status::{Refusal, Status};
+
+/// Which arithmetic computes the flow; named in the record so that certificate and instrument agree to the bit.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
+#[cfg_attr(feature = "serde", derive(serde::Serialize, serde::Deserialize), serde(rename_all = "kebab-case"))]
+pub enum Arithmetic {
+    /// The law as written, in IEEE 754 single precision.
+    Single,
+    /// A curve over pressure drop per temperature and line pressure, integers inside ([`FlowCurve`]).
+    Curve,
+}
 
 /// Octaves of the curve, from its end down.
 const OCTAVES: usize = 5;
@@ -28,6 +39,17 @@ const ONE: f32 = (1 << 30) as f32;
 
 /// Sum of the exponents of a pressure drop and of g's unit from which the flow is a normal number for certain.
 const SHORTEST_EXPONENT: i32 = 8;
+
+/// A sample of the law with its flows replaced by those of the curve.
+///
+/// # Errors
+/// Refuses what [`Conditions::sample`] refuses.
+pub(crate) fn by_curve(conditions: &Conditions, exact: Sample, drop: PressureDrop) -> Result<Sample, Refusal> {
+    let Ok(curve) = FlowCurve::of(conditions) else { return Ok(exact) };
+    let Quick { volume, status } = curve.sample(drop)?;
+    let (mass, standard) = conditions.other_flows(volume);
+    Ok(Sample { volume, mass, standard, status, ..exact })
+}
 
 /// A flow by the fast arithmetic.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -192,6 +214,15 @@ impl FlowCurve {
         })
     }
 
+    /// The curve of these conditions, ending where the flow stops being laminar or calibrated, or loses half its
+    /// pressure: the one an instrument and its certificate share.
+    ///
+    /// # Errors
+    /// Refuses conditions at which nothing can flow.
+    pub fn of(conditions: &Conditions) -> Result<Self, Refusal> {
+        Self::new(conditions, PressureDrop::from_pascals(conditions.curve_end()))
+    }
+
     /// The conditions the curve was prepared for.
     pub const fn conditions(&self) -> &Conditions {
         &self.conditions
@@ -214,6 +245,11 @@ impl FlowCurve {
         status.set(Status::STRONG_EXPANSION, bits > self.expansion);
         status.set(Status::STRONG_SLIP, bits > self.slip);
         Ok(Quick { volume: VolumeFlow::from_cubic_metres_per_second(f32::from_bits(flow)), status })
+    }
+
+    /// Mass flow, and dry flow at the reference conditions, of a volume flow of this curve.
+    pub fn other_flows(&self, volume: VolumeFlow) -> (MassFlow, Option<VolumeFlow>) {
+        self.conditions.other_flows(volume)
     }
 
     /// Bits of the volume flow at the bits of a pressure drop within the curve.

@@ -21,15 +21,17 @@ pub mod reference; // conditions at which flow is quoted
 
 pub mod calibration; // how well the element is known
 
-mod conditions; // the slow half: per change of temperature and line pressure
-
 pub mod regime; // where the law holds
+
+mod state; // fluid and law together, in either precision
 
 pub mod uncertainty; // what the flow is uncertain by
 
-pub mod flow; // the walk
+pub mod conditions; // the slow half: per change of temperature and line pressure
 
 pub mod flow_curve; // the fast arithmetic: integers inside
+
+pub mod flow; // the walk
 
 pub mod record; // the calibration as bytes
 

@@ -1,6 +1,6 @@
 //! What the sensors say: one reading, the trims that correct it, and what its parts are uncertain by.
 
-use crate::error::{Error, within};
+use crate::error::{Error, Limit, all_within};
 use crate::quantity::{AbsolutePressure, PressureDrop, RelativeHumidity, Temperature};
 use crate::status::Refusal;
 
@@ -100,11 +100,21 @@ impl Trims {
     /// # Errors
     /// Names the trim outside its limits.
     pub fn check(&self) -> Result<(), Error> {
-        within("pressure drop zero (Pa)", self.pressure_drop_zero_pa, -1e5, 1e5)?;
-        within("pressure drop gain", self.pressure_drop_gain, 0.5, 2.0)?;
-        within("temperature offset (K)", self.temperature_offset_k, -50.0, 50.0)?;
-        within("line pressure offset (Pa)", self.line_pressure_offset_pa, -1e6, 1e6)?;
-        Ok(())
+        const LIMITS: [Limit; 4] = [
+            ("pressure drop zero (Pa)", -1e5, 1e5),
+            ("pressure drop gain", 0.5, 2.0),
+            ("temperature offset (K)", -50.0, 50.0),
+            ("line pressure offset (Pa)", -1e6, 1e6),
+        ];
+        all_within(
+            &LIMITS,
+            [
+                self.pressure_drop_zero_pa,
+                self.pressure_drop_gain,
+                self.temperature_offset_k,
+                self.line_pressure_offset_pa,
+            ],
+        )
     }
 }
 
@@ -150,13 +160,25 @@ impl SensorUncertainty {
     /// # Errors
     /// Names the uncertainty outside its limits.
     pub fn check(&self) -> Result<(), Error> {
-        within("u pressure drop (Pa)", self.pressure_drop_pa, 0.0, 1e6)?;
-        within("u pressure drop (rel)", self.pressure_drop_rel, 0.0, 1.0)?;
-        within("u temperature (K)", self.temperature_k, 0.0, 100.0)?;
-        within("u line pressure (Pa)", self.line_pressure_pa, 0.0, 1e7)?;
-        within("u line pressure (rel)", self.line_pressure_rel, 0.0, 1.0)?;
-        within("u relative humidity", self.relative_humidity, 0.0, 1.0)?;
-        Ok(())
+        const LIMITS: [Limit; 6] = [
+            ("u pressure drop (Pa)", 0.0, 1e6),
+            ("u pressure drop (rel)", 0.0, 1.0),
+            ("u temperature (K)", 0.0, 100.0),
+            ("u line pressure (Pa)", 0.0, 1e7),
+            ("u line pressure (rel)", 0.0, 1.0),
+            ("u relative humidity", 0.0, 1.0),
+        ];
+        all_within(
+            &LIMITS,
+            [
+                self.pressure_drop_pa,
+                self.pressure_drop_rel,
+                self.temperature_k,
+                self.line_pressure_pa,
+                self.line_pressure_rel,
+                self.relative_humidity,
+            ],
+        )
     }
 }
 

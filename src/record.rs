@@ -4,34 +4,30 @@
 //! ends with a CRC-32 (ISO 3309, IEEE 802.3) over all that precedes it. It carries the stored table of its fluid and
 //! the constants of its law, so an instrument needs no file and a later version of this code computes the same flow.
 
-mod layout; // the bytes
+mod layout; // how each part is written and read back
 
 pub use layout::RECORD_LENGTH;
 
 use crate::calibration::Quality;
-use crate::element::Element;
+use crate::element::{Element, Shape};
 use crate::error::{Error, within};
 use crate::flow::Meter;
-use crate::fluid::StoredFluid;
-use crate::fluid::stored::Name;
+use crate::flow_curve::Arithmetic;
+use crate::fluid::{Phase, StoredFluid};
 use crate::reading::{SensorUncertainty, Trims};
 use crate::reference::ReferenceConditions;
 use crate::status::Status;
 use heapless::String;
+use layout::{Reader, Writer, choice, numbers_of};
 
 /// Longest serial number.
 pub const SERIAL_LENGTH: usize = 16;
 /// Longest reason for using a refused run.
 pub const REASON_LENGTH: usize = 64;
 
-/// Which arithmetic computes the flow; named in the record so that certificate and instrument agree to the bit.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-#[cfg_attr(feature = "defmt", derive(defmt::Format))]
-#[cfg_attr(feature = "serde", derive(serde::Serialize, serde::Deserialize), serde(rename_all = "kebab-case"))]
-pub enum Arithmetic {
-    /// IEEE 754 single precision, as written in this crate.
-    Single,
-}
+const MARK: [u8; 4] = *b"EVBR";
+const VERSION: u16 = 1;
+const CRC: crc::Crc<u32> = crc::Crc::<u32>::new(&crc::CRC_32_ISO_HDLC);
 
 /// A calibration record.
 ///
@@ -116,7 +112,7 @@ impl Record {
         ReferenceConditions::new(self.reference.temperature, self.reference.pressure)?;
         self.quality.check()?;
         self.element.check()?;
-        Name::checked(self.fluid.name())?;
+        self.fluid.name.check()?;
         self.fluid.check()
     }
 
@@ -127,9 +123,97 @@ impl Record {
     pub fn meter(&self) -> Result<Meter<'_>, Error> {
         self.check()?;
         let standing = if self.reason.is_empty() { Status::empty() } else { Status::REFUSED_RUN };
-        Ok(Meter::calibrated(self.element, &self.fluid, self.quality.clone())?
+        Ok(Meter::of_checked(self.element, &self.fluid, self.quality.clone(), true, standing)
             .with_sensors(self.trims, self.sensors)?
             .with_reference(self.reference)
-            .with_standing(standing))
+            .with_arithmetic(self.arithmetic))
     }
+
+    /// Writes the record's bytes.
+    pub fn encode(&self, bytes: &mut [u8; RECORD_LENGTH]) {
+        let mut w = Writer { bytes, at: 0 };
+        w.put(&MARK);
+        w.put(&VERSION.to_le_bytes());
+        w.put(&(RECORD_LENGTH as u16).to_le_bytes());
+        w.text::<SERIAL_LENGTH>(&self.serial);
+        w.put(&self.date.to_le_bytes());
+        w.put(&self.events.to_le_bytes());
+        w.put(&[self.arithmetic as u8, self.element.shape as u8, self.fluid.phase as u8, 0]);
+        w.text::<REASON_LENGTH>(&self.reason);
+        w.numbers(&numbers_of(&self.trims, &self.sensors, &self.reference));
+        w.quality(&self.quality);
+        w.element(&self.element);
+        w.fluid(&self.fluid);
+        let sum = CRC.checksum(w.written());
+        w.put(&sum.to_le_bytes());
+    }
+
+    /// Reads a record's bytes.
+    ///
+    /// # Errors
+    /// Not a record, another version, another length, damaged (any changed bit is found), or a field that makes no
+    /// sense.
+    pub fn decode(bytes: &[u8]) -> Result<Self, Error> {
+        let mut r = Reader { bytes, at: 0 };
+        let length = Error::WrongLength { found: bytes.len(), expected: RECORD_LENGTH };
+        if r.take::<4>().ok_or(length)? != MARK {
+            return Err(Error::NotARecord);
+        }
+        let version = u16::from_le_bytes(r.take().ok_or(length)?);
+        if version == 0 || version > VERSION {
+            return Err(Error::UnknownVersion { found: version, newest: VERSION });
+        }
+        let stated = usize::from(u16::from_le_bytes(r.take().ok_or(length)?));
+        if stated != RECORD_LENGTH || bytes.len() != RECORD_LENGTH {
+            return Err(length);
+        }
+        check_sum(bytes)?;
+        // Checked where it stands, since a record is too large to be moved about on a small stack.
+        let record = read(&mut r);
+        match &record {
+            Ok(sound) => sound.check().and(record),
+            Err(_) => record,
+        }
+    }
+
+    /// The checksum that stands at the end of the record's bytes.
+    pub fn checksum(&self) -> u32 {
+        let mut bytes = [0; RECORD_LENGTH];
+        self.encode(&mut bytes);
+        let [.., a, b, c, d] = bytes;
+        u32::from_le_bytes([a, b, c, d])
+    }
+}
+
+fn check_sum(bytes: &[u8]) -> Result<(), Error> {
+    let Some((body, stored)) = bytes.split_last_chunk::<4>() else {
+        return Err(Error::WrongLength { found: bytes.len(), expected: RECORD_LENGTH });
+    };
+    let (computed, stored) = (CRC.checksum(body), u32::from_le_bytes(*stored));
+    if computed == stored { Ok(()) } else { Err(Error::WrongChecksum { computed, stored }) }
+}
+
+/// The fields in the order of the layout, unchecked.
+fn read(r: &mut Reader<'_>) -> Result<Record, Error> {
+    let serial = r.text("serial")?;
+    let (date, events) = (u32::from_le_bytes(r.bytes()), u32::from_le_bytes(r.bytes()));
+    let [arithmetic, shape, phase, _] = r.bytes();
+    let arithmetic = choice("arithmetic", &[Arithmetic::Single, Arithmetic::Curve], arithmetic)?;
+    let shape = choice("shape", &[Shape::RoundTubes, Shape::ParallelPlates, Shape::Other], shape)?;
+    let phase = choice("phase", &[Phase::Gas, Phase::Liquid], phase)?;
+    let reason = r.text("reason")?;
+    let (trims, sensors, reference) = r.settings();
+    Ok(Record {
+        serial,
+        date,
+        events,
+        arithmetic,
+        reason,
+        trims,
+        sensors,
+        reference,
+        quality: r.quality()?,
+        element: r.element(shape),
+        fluid: r.fluid(phase),
+    })
 }

@@ -3,7 +3,6 @@
 //! The Reynolds number `Re = mdot Dh/(a mu) = U Dh/nu` follows from `x = mdot/mu` alone, so the dynamic and the
 //! kinematic form are one number.
 
-use crate::element::Element;
 use crate::element::law::Solution;
 use crate::status::Status;
 
@@ -23,11 +22,11 @@ pub(crate) const LARGEST_EXPANSION: f32 = 0.503_414_7;
 /// Slip s above which the neglected second order shows (Knudsen number xi/R of 0.015 in tubes).
 pub const SLIP_LIMIT: f32 = 0.06;
 
-/// The flags of a solution; `x_calibrated` is the largest calibrated x (m), 0 when there is none.
-pub(crate) fn judge(element: &Element, x_calibrated: f32, at: &Solution<f32>) -> Status {
+/// The flags of a solution at its Reynolds number; `x_calibrated` is the largest calibrated x (m), 0 when there is none.
+pub(crate) fn judge(reynolds: f32, x_calibrated: f32, at: &Solution<f32>) -> Status {
     let mut status = Status::empty();
     let beyond = x_calibrated > 0.0 && at.x.abs() > RANGE_MARGIN * x_calibrated;
-    status.set(Status::NOT_LAMINAR, element.reynolds(at.x) > LAMINAR_LIMIT);
+    status.set(Status::NOT_LAMINAR, reynolds > LAMINAR_LIMIT);
     status.set(Status::BEYOND_CALIBRATION, beyond);
     status.set(Status::STRONG_EXPANSION, at.log_ratio > EXPANSION_LIMIT);
     status.set(Status::STRONG_SLIP, at.slip > SLIP_LIMIT);

@@ -41,6 +41,6 @@ fn curve_agrees_with_double_precision() {
             }
         }
     }
-    println!("curve: worst {:.3e} at {}, rms {:.3e}, {count} samples", worst.0, worst.1, (sum / count as f64).sqrt());
+    println!("curve: worst {:.3e} at {}, rms {:.3e}, {count} samples", worst.0, worst.1, (sum / count).sqrt());
     assert!(worst.0 < tolerance::CURVE_AGAINST_DOUBLE, "{worst:?}");
 }

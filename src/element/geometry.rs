@@ -15,7 +15,7 @@
 //!
 //! The entrance of a real, sharp-edged inlet is not in these constants; a calibration absorbs it.
 
-use crate::error::{Error, within};
+use crate::error::{Error, Limit, all_within, within};
 use crate::quantity::{Length, Temperature};
 
 /// Shape of the channels.
@@ -86,16 +86,19 @@ impl Shape {
 
 impl ShapeConstants {
     fn check(&self) -> Result<(), Error> {
-        within("friction factor times Reynolds number", self.friction_reynolds, 1.0, 100.0)?;
-        within("kinetic loss", self.kinetic_loss, 0.1, 10.0)?;
-        within("kinetic-energy factor", self.kinetic_energy_factor, 0.0, 10.0)?;
-        within("thermal factor", self.thermal_factor, 0.0, 10.0)?;
-        let [h0, k, c, d] = self.entrance;
-        within("entrance h0", h0, 0.0, 0.9)?;
-        within("entrance k", k, 0.0, 1e4)?;
-        within("entrance c", c, 0.0, 1.0)?;
-        within("entrance d", d, 1e-3, 10.0)?;
-        Ok(())
+        const LIMITS: [Limit; 4] = [
+            ("friction factor times Reynolds number", 1.0, 100.0),
+            ("kinetic loss", 0.1, 10.0),
+            ("kinetic-energy factor", 0.0, 10.0),
+            ("thermal factor", 0.0, 10.0),
+        ];
+        const ENTRANCE: [Limit; 4] =
+            [("entrance h0", 0.0, 0.9), ("entrance k", 0.0, 1e4), ("entrance c", 0.0, 1.0), ("entrance d", 1e-3, 10.0)];
+        all_within(
+            &LIMITS,
+            [self.friction_reynolds, self.kinetic_loss, self.kinetic_energy_factor, self.thermal_factor],
+        )?;
+        all_within(&ENTRANCE, self.entrance)
     }
 }
 
@@ -125,13 +128,17 @@ pub struct Element {
 
 const PI: f64 = core::f64::consts::PI;
 
+const COEFFICIENTS: [Limit; 2] = [("a (1/m3)", 1.0, 1e30), ("b (1/m4)", 0.0, 1e30)];
+
+const GROWTH: [Limit; 2] = [("expansion (1/K)", -1e-4, 1e-3), ("reference temperature (K)", 100.0, 1000.0)];
+
 impl Element {
     /// `count` straight round tubes of one bore and length.
     ///
     /// `A = 8 L/(N pi R^4)` (Poiseuille, 1840), `B = K1/(N pi R^2)^2`.
     ///
     /// # Errors
-    /// Names the size outside 1 um..50 mm (bore), 0.1 mm..10 m (length) or 1..1e6 (count).
+    /// Names the size outside 1 um..50 mm (bore), 0.1 mm..10 m (length) or 1..1e6 (count), or an A below 1 1/m3.
     ///
     /// ```
     /// use evenbore::element::Element;
@@ -144,7 +151,7 @@ impl Element {
         let n = f64::from(within("count", count as f32, 1.0, 1e6)?);
         let diameter = f64::from(within("bore (m)", bore.as_metres(), 1e-6, 0.05)?);
         let area = n * PI * diameter * diameter / 4.0;
-        Self::from_sizes(Shape::RoundTubes, area, diameter, length)
+        Self::from_sizes(Shape::RoundTubes, ROUND_TUBES, [area, diameter], length)
     }
 
     /// Flat slots of one full gap and a total width.
@@ -156,25 +163,60 @@ impl Element {
     pub fn parallel_plates(gap: Length, width: Length, length: Length) -> Result<Self, Error> {
         let s = f64::from(within("gap (m)", gap.as_metres(), 1e-6, 0.01)?);
         let w = f64::from(within("width (m)", width.as_metres(), 1e-4, 1000.0)?);
-        Self::from_sizes(Shape::ParallelPlates, s * w, 2.0 * s, length)
+        Self::from_sizes(Shape::ParallelPlates, PARALLEL_PLATES, [s * w, 2.0 * s], length)
     }
 
-    fn from_sizes(shape: Shape, area: f64, diameter: f64, length: Length) -> Result<Self, Error> {
+    /// A matrix of other channels whose friction is known: f Re from [`ducts`](super::ducts), hydraulic diameter, total
+    /// open area (m2) and length.
+    ///
+    /// `A = 2 fRe L/(a Dh^2)`, `B = K1/a^2` with K1 = 1, the middle of tubes and plates; slip factor fRe/2, entrance off.
+    ///
+    /// # Errors
+    /// Names the value outside 10..30 (f Re), 1 um..50 mm, 1e-12..10 m2 or 0.1 mm..10 m (length).
+    ///
+    /// ```
+    /// use evenbore::element::{Element, ducts};
+    /// use evenbore::quantity::Length;
+    /// // 500 square channels of 0.5 mm side, 80 mm long.
+    /// let side = Length::from_millimetres(0.5);
+    /// let element = Element::duct(ducts::rectangle(1.0)?, side, 500.0 * 0.25e-6, Length::from_millimetres(80.0))?;
+    /// assert!((element.a() / 7.284e10 - 1.0).abs() < 1e-3);
+    /// # Ok::<(), evenbore::error::Error>(())
+    /// ```
+    pub fn duct(
+        friction_reynolds: f32,
+        hydraulic_diameter: Length,
+        open_area_m2: f32,
+        length: Length,
+    ) -> Result<Self, Error> {
+        let friction_reynolds = within("friction factor times Reynolds number", friction_reynolds, 10.0, 30.0)?;
+        let diameter = within("hydraulic diameter (m)", hydraulic_diameter.as_metres(), 1e-6, 0.05)?;
+        let area = within("open area (m2)", open_area_m2, 1e-12, 10.0)?;
+        let constants = ShapeConstants { friction_reynolds, ..OTHER };
+        Self::from_sizes(Shape::Other, constants, [area, diameter].map(f64::from), length)
+    }
+
+    fn from_sizes(
+        shape: Shape,
+        constants: ShapeConstants,
+        [area, diameter]: [f64; 2],
+        length: Length,
+    ) -> Result<Self, Error> {
         let metres = f64::from(within("length (m)", length.as_metres(), 1e-4, 10.0)?);
-        let constants = shape.constants();
         let a = 2.0 * f64::from(constants.friction_reynolds) * metres / (area * diameter * diameter);
         let b = f64::from(constants.kinetic_loss) / (area * area);
-        Ok(Self {
+        let nominal = Self {
             shape,
             constants,
-            a: a as f32,
-            b: b as f32,
+            a: 1.0,
+            b: 0.0,
             open_area: area as f32,
             hydraulic_diameter: diameter as f32,
             length: metres as f32,
             expansion: 0.0,
             reference_temperature: 293.15,
-        })
+        };
+        nominal.with_coefficients(a as f32, b as f32)
     }
 
     /// A matrix of unknown channels: A (1/m3) and B (1/m4) from a calibration, entrance and slip terms off.
@@ -201,8 +243,8 @@ impl Element {
     /// # Errors
     /// Names the value outside -1e-4..1e-3 1/K or 100..1000 K.
     pub fn with_expansion(self, per_kelvin: f32, reference: Temperature) -> Result<Self, Error> {
-        let expansion = within("expansion (1/K)", per_kelvin, -1e-4, 1e-3)?;
-        let reference_temperature = within("reference temperature (K)", reference.as_kelvin(), 100.0, 1000.0)?;
+        let (expansion, reference_temperature) = (per_kelvin, reference.as_kelvin());
+        all_within(&GROWTH, [expansion, reference_temperature])?;
         Ok(Self { expansion, reference_temperature, ..self })
     }
 
@@ -211,7 +253,8 @@ impl Element {
     /// # Errors
     /// Names the coefficient outside 1..1e30 (A) or 0..1e30 (B).
     pub fn with_coefficients(self, a: f32, b: f32) -> Result<Self, Error> {
-        Ok(Self { a: within("a (1/m3)", a, 1.0, 1e30)?, b: within("b (1/m4)", b, 0.0, 1e30)?, ..self })
+        all_within(&COEFFICIENTS, [a, b])?;
+        Ok(Self { a, b, ..self })
     }
 
     /// A matrix of shape "other" with known hydraulic diameter (m) and open area (m2), which switch on the slip term
@@ -229,13 +272,12 @@ impl Element {
     /// # Errors
     /// Names the field that is not finite or outside its limits.
     pub fn check(&self) -> Result<(), Error> {
-        within("open area (m2)", self.open_area, 0.0, 1e6)?;
-        within("hydraulic diameter (m)", self.hydraulic_diameter, 0.0, 0.05)?;
-        within("length (m)", self.length, 0.0, 10.0)?;
+        const SIZES: [Limit; 3] =
+            [("open area (m2)", 0.0, 1e6), ("hydraulic diameter (m)", 0.0, 0.05), ("length (m)", 0.0, 10.0)];
+        all_within(&SIZES, [self.open_area, self.hydraulic_diameter, self.length])?;
         self.constants.check()?;
-        self.with_coefficients(self.a, self.b)?;
-        self.with_expansion(self.expansion, Temperature::from_kelvin(self.reference_temperature))?;
-        Ok(())
+        all_within(&COEFFICIENTS, [self.a, self.b])?;
+        all_within(&GROWTH, [self.expansion, self.reference_temperature])
     }
 
     /// Shape of the channels.

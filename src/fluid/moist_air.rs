@@ -3,24 +3,24 @@
 //! `x_w = RH f p_sv/p`, with p_sv and the enhancement factor f of CIPM-2007 (Picard, Davis, Glaser & Fujii,
 //! Metrologia 45 (2008) 149). Density scales with the molar mass `1 - x_w (1 - Mw/Ma)` and
 //! `Z = Z_dry + p/T (e1 x_w + (e2 + e3 (T - 293.15)) x_w^2)`, fitted to the real-gas humid air of ASHRAE RP-1485:
-//! within 25 ppm of it from 0 to 60 C and of CIPM-2007 from 15 to 27 C. Viscosity scales with
+//! within 27 ppm of it from 0 to 60 C and of CIPM-2007 from 15 to 27 C. Viscosity scales with
 //! `1 - x_w (m0 + m1 (T - 293.15))`, within 0.1 % of the same source to 40 C and 0.25 % to 60 C; sources disagree on
 //! m0 (0.10 to 0.51, from memory), so its uncertainty is 0.12 x_w.
 
 use super::properties::{PropertiesAt, outside};
-use super::stored::StoredFluid;
+use super::stored::{Name, StoredFluid};
 use crate::math::Real;
 use crate::quantity::{AbsolutePressure, Density, RelativeHumidity, Temperature, Viscosity};
 use crate::status::Refusal;
 
 /// The fluid that carries humidity.
-const MOIST_FLUID: &str = "air";
+const MOIST_FLUID: Name = Name::new("air");
 
 /// Molar mass of water, kg/mol.
 const WATER_MOLAR_MASS: f64 = 0.018_015_28;
 
 /// Coldest and warmest air a humidity is accepted for, K.
-const TEMPERATURE_RANGE: [f32; 2] = [253.15, 333.15];
+const TEMPERATURE_RANGE: [f64; 2] = [253.15, 333.15];
 
 /// Largest mole fraction of water vapour accepted.
 const MOST_WATER: f64 = 0.25;
@@ -40,6 +40,10 @@ pub(crate) struct Moisture<F> {
     pub viscosity_slope: F,
     /// dln rho/dx_w.
     pub density_slope: F,
+    /// dx_w/dT at constant relative humidity, 1/K.
+    pub water_by_temperature: F,
+    /// dln mu/dT at constant x_w, beyond that of dry air, 1/K.
+    pub viscosity_by_temperature: F,
     /// What is added to the pressure coefficient of Z, 1/Pa.
     pub compressibility: F,
     /// Relative standard uncertainty of viscosity from the water.
@@ -57,6 +61,8 @@ impl<F: Real> Moisture<F> {
             dry_share: one,
             viscosity_slope: zero,
             density_slope: zero,
+            water_by_temperature: zero,
+            viscosity_by_temperature: zero,
             compressibility: zero,
             u_viscosity: zero,
         }
@@ -81,6 +87,8 @@ impl<F: Real> Moisture<F> {
             dry_share: (one - water) / mass_factor,
             viscosity_slope: -m / viscosity_factor,
             density_slope: -lighter / mass_factor,
+            water_by_temperature: water * saturation_exponent(temperature) / temperature,
+            viscosity_by_temperature: -water * F::of(VISCOSITY_TERMS[1]) / viscosity_factor,
             compressibility: water * (e1 + water * (e2 + e3 * warmer)) / temperature,
             u_viscosity: F::of(U_VISCOSITY) * water,
         }
@@ -91,6 +99,7 @@ impl<F: Real> Moisture<F> {
         let [b, c, d] = dry.z;
         PropertiesAt {
             mu0: dry.mu0 * self.viscosity_factor,
+            viscosity_slope: dry.viscosity_slope * self.viscosity_factor,
             base: dry.base * self.mass_factor,
             z: [b + self.compressibility, c, d],
             ..dry
@@ -105,9 +114,9 @@ pub(crate) fn moisture<F: Real>(
     temperature: F,
     pressure: F,
 ) -> Result<Moisture<F>, Refusal> {
-    let [low, high] = TEMPERATURE_RANGE.map(F::stored);
+    let [low, high] = TEMPERATURE_RANGE.map(F::of);
     let possible = fraction >= F::of(0.0) && fraction <= F::of(1.0) && temperature >= low && temperature <= high;
-    if !possible || fluid.name() != MOIST_FLUID {
+    if !possible || fluid.name != MOIST_FLUID {
         return Err(Refusal::HUMIDITY_INVALID);
     }
     let moisture = Moisture::new(fraction, temperature, pressure, F::stored(fluid.molar_mass));
@@ -158,10 +167,19 @@ const U_VISCOSITY: f64 = 0.12;
 /// e1, e2 (K/Pa), e3 (1/Pa) of the compressibility of moist air.
 const COMPRESSIBILITY_TERMS: [f64; 3] = [-4.981_153e-6, -1.398_023e-4, 1.454_626e-6];
 
+/// Coefficients of the saturation pressure, by power of temperature 2 to -1.
+const SATURATION: [f64; 4] = [1.237_884_7e-5, -1.912_131_6e-2, 33.937_110_47, -6.343_164_5e3];
+
 /// Saturation pressure over water, Pa: CIPM-2007, equation A1.1.
 fn saturation_pressure<F: Real>(t: F) -> F {
-    let [a, b, c, d] = [1.237_884_7e-5, -1.912_131_6e-2, 33.937_110_47, -6.343_164_5e3].map(F::of);
+    let [a, b, c, d] = SATURATION.map(F::of);
     (a * t * t + b * t + c + d / t).exponential()
+}
+
+/// dln p_sv/dln T.
+fn saturation_exponent<F: Real>(t: F) -> F {
+    let [a, b, _, d] = SATURATION.map(F::of);
+    (a + a) * t * t + b * t - d / t
 }
 
 /// Enhancement factor f: CIPM-2007, equation A1.2.

@@ -1,6 +1,6 @@
 //! A stored table evaluated at one temperature: what remains is cheap arithmetic in pressure.
 
-use super::stored::{LIQUID_SCALE, Phase, StoredFluid};
+use super::stored::{COARSE_NODES, Curve, FINE_NODES, LIQUID_SCALE, Phase, StoredFluid};
 use crate::math::Real;
 use crate::quantity::{AbsolutePressure, Density, Temperature, Viscosity};
 use crate::status::Refusal;
@@ -21,10 +21,14 @@ pub(crate) struct PropertiesAt<F> {
     pub base: F,
     /// Gas: conduction group G; liquid: zero.
     pub conduction: F,
-    /// n = dln mu/dln T.
-    pub exponent: F,
-    /// dln rho/dT at constant pressure, 1/K.
-    pub expansion: F,
+    /// Slope of mu0 per segment of its curve, Pa s.
+    pub viscosity_slope: F,
+    /// Liquid: slope of `base` per segment of its curve; gas: zero.
+    pub density_slope: F,
+    /// K.
+    pub temperature: F,
+    /// Width of the table, K.
+    pub span: F,
     /// Whether density follows pressure.
     pub gas: bool,
 }
@@ -35,28 +39,43 @@ impl<F: Real> PropertiesAt<F> {
         let low = F::stored(fluid.temperature_range[0]);
         let span = F::stored(fluid.temperature_range[1]) - low;
         let t = (temperature - low) / span; // 0..1 over the table
-        let (fine, coarse) = (F::of(32.0), F::of(8.0));
-        let (mu, mu_slope) = fluid.viscosity.at(t * fine);
+        let (fine, coarse) = (Curve::<FINE_NODES>::place(t), Curve::<COARSE_NODES>::place(t));
+        let (mu, mu_slope) = (fluid.viscosity.value(&fine), fluid.viscosity.slope(&fine));
         let [k1, k2] = &fluid.viscosity_pressure;
         let [b, c, d] = &fluid.density_pressure;
-        let (extra, extra_slope) = fluid.extra.at(t * coarse);
+        let extra = fluid.extra.value(&coarse);
         let gas = matches!(fluid.phase, Phase::Gas);
-        let (mu0, dlnmu, base, conduction, expansion) = if gas {
-            let specific = F::stored(fluid.molar_mass) / F::of(MOLAR_GAS_CONSTANT);
-            (mu, mu_slope / mu, specific / temperature, extra, -F::of(1.0) / temperature)
+        let zero = F::of(0.0);
+        let (mu0, mu_slope, base, conduction, density_slope) = if gas {
+            (mu, mu_slope, F::stored(fluid.molar_mass) / (F::of(MOLAR_GAS_CONSTANT) * temperature), extra, zero)
         } else {
-            (F::of(LIQUID_SCALE) * mu.exponential(), mu_slope, extra, F::of(0.0), extra_slope * coarse / (extra * span))
+            let mu = F::of(LIQUID_SCALE) * mu.exponential();
+            (mu, mu_slope * mu, extra, zero, fluid.extra.slope(&coarse))
         };
         Self {
             mu0,
-            k: [k1.at(t * coarse).0, k2.at(t * coarse).0],
-            z: [b.at(t * coarse).0, c.at(t * coarse).0, d.at(t * coarse).0],
+            k: [k1.value(&coarse), k2.value(&coarse)],
+            z: [b.value(&coarse), c.value(&coarse), d.value(&coarse)],
             base,
             conduction,
-            exponent: dlnmu * fine * temperature / span,
-            expansion,
+            viscosity_slope: mu_slope,
+            density_slope,
+            temperature,
+            span,
             gas,
         }
+    }
+
+    /// n = dln mu/dln T.
+    pub fn exponent(&self) -> F {
+        let segments = F::of(Curve::<FINE_NODES>::SEGMENTS as f64);
+        self.viscosity_slope * segments * self.temperature / (self.mu0 * self.span)
+    }
+
+    /// dln rho/dT at constant pressure, 1/K.
+    pub fn expansion(&self) -> F {
+        let segments = F::of(Curve::<COARSE_NODES>::SEGMENTS as f64);
+        if self.gas { -F::of(1.0) / self.temperature } else { self.density_slope * segments / (self.base * self.span) }
     }
 
     /// Dynamic viscosity at absolute pressure `p`, Pa s.

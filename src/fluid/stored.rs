@@ -10,7 +10,7 @@
 //! Liquids store the logarithm because their viscosity spans decades; gases do not, since the rounding of a
 //! logarithm costs them 1 ppm. The logarithm is that of viscosity over 10 mPa s, which keeps it and its rounding small.
 
-use crate::error::{Error, within};
+use crate::error::{Error, Limit, all_within, within};
 use crate::math::Real;
 use crate::quantity::{AbsolutePressure, Temperature};
 
@@ -25,6 +25,8 @@ pub(crate) const LIQUID_SCALE: f64 = 0.01;
 
 /// Longest fluid name, in bytes.
 pub const NAME_LENGTH: usize = 24;
+
+const BAD_NAME: Error = Error::BadText { field: "fluid name", most: NAME_LENGTH };
 
 /// A fluid's name: 1 to 24 printable ASCII characters, padded with zeros.
 #[derive(Clone, Copy, PartialEq, Eq)]
@@ -50,17 +52,26 @@ impl Name {
     /// # Errors
     /// Text that is empty, longer than 24 bytes or not printable ASCII.
     pub fn checked(text: &str) -> Result<Self, Error> {
-        let printable = text.bytes().all(|c| (b' '..=b'~').contains(&c));
-        if text.is_empty() || text.len() > NAME_LENGTH || !printable {
-            return Err(Error::BadText { field: "fluid name", most: NAME_LENGTH });
-        }
-        Ok(Self::new(text))
+        let name = Self::new(text);
+        name.check()?;
+        if name.text().len() == text.len() { Ok(name) } else { Err(BAD_NAME) }
+    }
+
+    /// Accepts a name that is not empty and printable ASCII up to its padding.
+    pub(crate) fn check(&self) -> Result<(), Error> {
+        let printable = self.text().iter().all(|c| (b' '..=b'~').contains(c));
+        if self.text().is_empty() || !printable { Err(BAD_NAME) } else { Ok(()) }
     }
 
     /// The name as text.
     pub fn as_str(&self) -> &str {
+        core::str::from_utf8(self.text()).unwrap_or("")
+    }
+
+    /// The bytes before the padding.
+    fn text(&self) -> &[u8] {
         let length = self.bytes.iter().position(|&c| c == 0).unwrap_or(NAME_LENGTH);
-        self.bytes.get(..length).and_then(|b| core::str::from_utf8(b).ok()).unwrap_or("")
+        self.bytes.get(..length).unwrap_or(&[])
     }
 }
 
@@ -104,23 +115,50 @@ impl<const NODES: usize> Curve<NODES> {
     /// Number of segments.
     pub(crate) const SEGMENTS: usize = NODES - 1;
 
-    /// Value and slope (per segment) at `position`, counted in segments from the first node; the end segments extend
-    /// beyond the curve.
-    ///
-    /// Cubic Hermite interpolation in the form `y0 + t (m0 + t (c2 + t c3))`, whose small terms lose no digits.
-    pub(crate) fn at<F: Real>(&self, position: F) -> (F, F) {
-        let start = position.index().min(Self::SEGMENTS.saturating_sub(1));
-        let (Some([y0, m0]), Some([y1, m1])) = (self.nodes.get(start), self.nodes.get(start + 1)) else {
-            return (F::of(0.0), F::of(0.0)); // not reached: start is at most NODES - 2
+    /// The place at `share` of the way from the first node to the last; the end segments extend beyond the curve.
+    pub(crate) fn place<F: Real>(share: F) -> Place<F> {
+        let position = share * F::of(Self::SEGMENTS as f64);
+        let segment = position.index().min(Self::SEGMENTS.saturating_sub(1));
+        Place::new(segment, position - F::of(segment as f64))
+    }
+
+    /// Value at a place: `y0 + w (y1 - y0) + w0 m0 + w1 m1`, whose small terms lose no digits.
+    pub(crate) fn value<F: Real>(&self, place: &Place<F>) -> F {
+        let ([y0, rise, m0, m1], [w, w0, w1]) = (self.segment(place), place.weights);
+        y0 + (rise * w + (m0 * w0 + m1 * w1))
+    }
+
+    /// Slope at a place, per segment: between the nodes' own, which is enough for an uncertainty.
+    pub(crate) fn slope<F: Real>(&self, place: &Place<F>) -> F {
+        let [_, _, m0, m1] = self.segment(place);
+        m0 + place.t * (m1 - m0)
+    }
+
+    /// Start, rise and end slopes of a place's segment.
+    fn segment<F: Real>(&self, place: &Place<F>) -> [F; 4] {
+        let (Some([y0, m0]), Some([y1, m1])) = (self.nodes.get(place.segment), self.nodes.get(place.segment + 1))
+        else {
+            return [F::of(0.0); 4]; // not reached: a place's segment is at most NODES - 2
         };
-        let (y0, m0, y1, m1) = (F::stored(*y0), F::stored(*m0), F::stored(*y1), F::stored(*m1));
-        let t = position - F::of(start as f64);
-        let rise = y1 - y0;
-        let c3 = m0 + m1 - (rise + rise);
-        let c2 = rise - m0 - c3;
-        let value = y0 + t * (m0 + t * (c2 + t * c3));
-        let slope = m0 + t * (c2 + c2 + t * (c3 + c3 + c3));
-        (value, slope)
+        [F::stored(*y0), F::stored(*y1) - F::stored(*y0), F::stored(*m0), F::stored(*m1)]
+    }
+}
+
+/// A place on every curve of the same number of nodes, with what cubic Hermite interpolation weighs there.
+#[derive(Debug, Clone, Copy)]
+pub(crate) struct Place<F> {
+    segment: usize,
+    /// 0 to 1 along the segment.
+    t: F,
+    /// Of the segment's rise, of the slope at its start, of the slope at its end.
+    weights: [F; 3],
+}
+
+impl<F: Real> Place<F> {
+    fn new(segment: usize, t: F) -> Self {
+        let left = F::of(1.0) - t;
+        let (tt, product) = (t * t, t * left);
+        Self { segment, t, weights: [tt + F::of(2.0) * (tt * left), product * left, -(product * t)] }
     }
 }
 
@@ -190,42 +228,48 @@ impl StoredFluid {
     /// # Errors
     /// Names the field that is not finite or outside its limits.
     pub fn check(&self) -> Result<(), Error> {
+        const LIMITS: [Limit; 5] = [
+            ("molar mass (kg/mol)", 1e-3, 10.0),
+            ("lowest table temperature (K)", 1.0, 2000.0),
+            ("lowest table pressure (Pa)", 0.0, 1e9),
+            ("relative uncertainty of viscosity", 0.0, 1.0),
+            ("relative uncertainty of viscosity ratio", 0.0, 1.0),
+        ];
         let [t_low, t_high] = self.temperature_range;
         let [p_low, p_high] = self.pressure_range;
-        within("molar mass (kg/mol)", self.molar_mass, 1e-3, 10.0)?;
-        within("lowest table temperature (K)", t_low, 1.0, 2000.0)?;
+        all_within(&LIMITS, [self.molar_mass, t_low, p_low, self.u_viscosity, self.u_viscosity_ratio])?;
         within("highest table temperature (K)", t_high, t_low + 1.0, 3000.0)?;
-        within("lowest table pressure (Pa)", p_low, 0.0, 1e9)?;
         within("highest table pressure (Pa)", p_high, p_low + 1.0, 1e9)?;
-        within("relative uncertainty of viscosity", self.u_viscosity, 0.0, 1.0)?;
-        within("relative uncertainty of viscosity ratio", self.u_viscosity_ratio, 0.0, 1.0)?;
         self.check_curves()
     }
 
     fn check_curves(&self) -> Result<(), Error> {
-        let (least, most) = match self.phase {
-            Phase::Gas => (1e-7, 1e-2),
-            Phase::Liquid => (-10.0, 14.0),
+        const GAS: [[Limit; 2]; 2] = [
+            [("stored viscosity", 1e-7, 1e-2), ("stored viscosity slope", -10.0, 10.0)],
+            [("stored conduction group", 0.0, 10.0), ("stored conduction group slope", -1e5, 1e5)],
+        ];
+        const LIQUID: [[Limit; 2]; 2] = [
+            [("stored viscosity", -10.0, 14.0), ("stored viscosity slope", -10.0, 10.0)],
+            [("stored density", 1.0, 1e5), ("stored density slope", -1e5, 1e5)],
+        ];
+        const PRESSURE: [Limit; 2] =
+            [("stored pressure coefficient (1/Pa)", -1e-4, 1e-4), ("stored pressure coefficient slope", -1e-4, 1e-4)];
+        let [viscosity, extra] = match self.phase {
+            Phase::Gas => &GAS,
+            Phase::Liquid => &LIQUID,
         };
-        for [value, slope] in self.viscosity.nodes {
-            within("stored viscosity", value, least, most)?;
-            within("stored viscosity slope", slope, -10.0, 10.0)?;
-        }
-        let (least, most) = match self.phase {
-            Phase::Gas => (0.0, 10.0),
-            Phase::Liquid => (1.0, 1e5),
-        };
-        for [value, slope] in self.extra.nodes {
-            within("stored density or conduction group", value, least, most)?;
-            within("stored density slope", slope, -1e5, 1e5)?;
-        }
-        let pressure_curves = self.viscosity_pressure.iter().chain(self.density_pressure.iter());
-        for [value, slope] in pressure_curves.flat_map(|curve| curve.nodes) {
-            within("stored pressure coefficient (1/Pa)", value, -1e-4, 1e-4)?;
-            within("stored pressure coefficient slope", slope, -1e-4, 1e-4)?;
+        nodes_within(viscosity, &self.viscosity.nodes)?;
+        nodes_within(extra, &self.extra.nodes)?;
+        for curve in self.viscosity_pressure.iter().chain(&self.density_pressure) {
+            nodes_within(&PRESSURE, &curve.nodes)?;
         }
         Ok(())
     }
+}
+
+#[inline(never)] // as `all_within`
+fn nodes_within(limits: &[Limit; 2], nodes: &[[f32; 2]]) -> Result<(), Error> {
+    nodes.iter().try_for_each(|node| all_within(limits, *node))
 }
 
 /// A fluid of the catalogue: its stored table and where its numbers come from.

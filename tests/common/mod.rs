@@ -4,8 +4,9 @@
 pub mod tolerance;
 
 use evenbore::fluid::StoredFluid;
+use evenbore::fluid::builder::{Frame, liquid};
 use evenbore::fluid::mineral_oil::{OilData, mineral_oil};
-use evenbore::quantity::{Density, KinematicViscosity, Length, Temperature};
+use evenbore::quantity::{AbsolutePressure, Density, KinematicViscosity, Length, Temperature};
 use evenbore::{Element, fluid::catalogue};
 
 /// Elements as makers build them: bundle, large bundle, fine capillaries, short tubes, plates.
@@ -54,4 +55,63 @@ pub fn sweep(low: f64, high: f64, n: usize) -> impl Iterator<Item = f64> + Clone
 /// `n` values from `low` to `high`, evenly spaced in their logarithm.
 pub fn decades(low: f64, high: f64, n: usize) -> impl Iterator<Item = f64> + Clone {
     sweep(low.ln(), high.ln(), n).map(f64::exp)
+}
+
+/// Cells of a comma-separated file under `tests/published`, without its comments and its line of names.
+pub fn rows(file: &str) -> Vec<Vec<String>> {
+    let path = format!("{}/tests/published/{file}", env!("CARGO_MANIFEST_DIR"));
+    let text = std::fs::read_to_string(&path).unwrap_or_else(|error| panic!("{path}: {error}"));
+    let lines = text.lines().filter(|line| !line.starts_with('#') && !line.is_empty()).skip(1);
+    lines.map(|line| line.split(',').map(|cell| cell.trim().to_owned()).collect()).collect()
+}
+
+/// The number in a cell.
+pub fn number(row: &[String], column: usize) -> f64 {
+    row[column].parse().unwrap_or_else(|_| panic!("column {column} of {row:?} is no number"))
+}
+
+/// The fluid of one viscosity (Pa s) and density (kg/m3) at every temperature and pressure.
+pub fn constant_liquid(viscosity: f64, density: f64) -> StoredFluid {
+    let frame = Frame {
+        name: "constant",
+        temperature_range: [Temperature::from_celsius(0.0), Temperature::from_celsius(100.0)],
+        pressure_range: [AbsolutePressure::from_pascals(1e3), AbsolutePressure::from_pascals(1e7)],
+        at_pressure: AbsolutePressure::from_pascals(1e5),
+        viscosity_per_pascal: 0.0,
+        density_per_pascal: 0.0,
+        u_viscosity: 0.0,
+        u_viscosity_ratio: 0.0,
+    };
+    liquid(&frame, |_| viscosity, |_| density).unwrap()
+}
+
+/// Largest and root-mean-square error of a sweep; an error that is not a number fails at once.
+#[derive(Default)]
+pub struct Errors {
+    /// Largest magnitude.
+    pub worst: f64,
+    /// Where it is.
+    pub place: String,
+    /// How many there were.
+    pub count: usize,
+    squares: f64,
+}
+
+impl Errors {
+    /// Takes in one error.
+    pub fn add(&mut self, error: f64, place: impl FnOnce() -> String) {
+        assert!(error.is_finite(), "error {error} at {}", place());
+        self.squares += error * error;
+        self.count += 1;
+        if error.abs() > self.worst {
+            (self.worst, self.place) = (error.abs(), place());
+        }
+    }
+
+    /// Prints the figures and asserts that there were errors to judge, and that none exceeds `limit`.
+    pub fn judge(&self, what: &str, limit: f64) {
+        let rms = (self.squares / self.count as f64).sqrt();
+        println!("{what}: worst {:.3e} at {}, rms {rms:.3e}, {} cases", self.worst, self.place, self.count);
+        assert!(self.count > 0 && self.worst <= limit, "{what}: {:.3e} > {limit:e} at {}", self.worst, self.place);
+    }
 }

@@ -10,6 +10,8 @@ pub mod budget; // where an uncertainty comes from, source by source
 
 pub mod stock; // sizes a workshop finds on the shelf
 
+pub mod task; // what an element is sized for
+
 pub mod design; // one candidate, judged by the law
 
 pub mod sizing; // the shortlist, and why the rest is not on it

@@ -4,16 +4,25 @@
 //! `report/page.html` with every value escaped; figures are drawn by the modules below and hold no text of the user's
 //! that has not been escaped.
 
-pub(crate) mod axis;
-mod characteristic;
-pub(crate) mod figure;
-pub(crate) mod key;
-mod label;
-pub(crate) mod numbers;
-pub(crate) mod range;
-mod residuals;
-mod tables;
-pub(crate) mod words;
+pub(crate) mod numbers; // rounding and typography of numbers
+
+pub(crate) mod axis; // scales and ticks
+
+pub(crate) mod figure; // SVG primitives
+
+pub(crate) mod key; // keys of figures
+
+mod label; // labels that keep clear of each other
+
+mod characteristic; // figure 1
+
+mod residuals; // figure 2
+
+pub(crate) mod range; // figure 3
+
+pub(crate) mod words; // sentences
+
+mod tables; // rows of the tables
 
 use crate::calibrate::outcome::{Calibration, Finding, UncertaintyRow};
 use figure::Rendition;

@@ -5,11 +5,15 @@
 
 use thiserror::Error;
 
-pub mod both_axes;
-pub mod distributions;
-pub mod least_squares;
-pub mod rank_one;
-pub mod welch;
+pub mod distributions; // normal, Student, chi-squared, F
+
+pub mod least_squares; // linear fits with priors
+
+pub mod rank_one; // errors common to all points
+
+pub mod both_axes; // a line with errors in both coordinates
+
+pub mod welch; // effective degrees of freedom
 
 /// Why a statistic could not be computed: which input, what it was, and what was allowed.
 #[derive(Debug, Clone, PartialEq, Error)]

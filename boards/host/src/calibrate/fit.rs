@@ -43,7 +43,7 @@ pub struct Prior {
 pub struct CommonShift {
     /// The cause.
     pub cause: Cause,
-    /// Largest relative standard uncertainty among the points (kelvin for temperature, pascal for a zero).
+    /// Largest standard uncertainty among the points: relative, kelvin for temperature.
     pub u: f64,
     /// Change of A and B.
     pub shift: [f64; 2],
@@ -149,7 +149,7 @@ fn common_effects(samples: &[Sample], cause: Cause, u_viscosity: f64, a: f64, b:
         Cause::ReferenceFlow => {
             of_sources(sample, &[Source::ReferenceFlow, Source::ReferenceTemperature, Source::ReferencePressure])
         }
-        Cause::Density => of_sources(sample, &[Source::LinePressure]),
+        Cause::Density => of_sources(sample, &[Source::LinePressure, Source::RelativeHumidity]),
         Cause::Temperature => of_sources(sample, &[Source::Temperature]),
         Cause::PressureDrop | Cause::PressureDropZero => of_sources(sample, &[Source::PressureDrop]),
         Cause::Geometry => 0.0,
@@ -295,28 +295,52 @@ fn shifts(problem: &Problem<'_>, u_viscosity: f64, sigmas: &[f64], a: f64, b: f6
         }
         effects.extend(problem.prior.map(|_| 0.0));
         let answer = problem.solve(&effects, sigmas, &zero)?;
-        let u = largest_u(problem.samples, cause, u_viscosity);
-        shifts.push(CommonShift { cause, u, shift: [answer.solution[0], answer.solution[1]] });
+        let u = largest_u(problem.samples, cause, u_viscosity)
+            .unwrap_or_else(|| as_relative(problem.samples, cause, &effects, a, b));
+        let shift = [answer.solution[0], answer.solution[1]];
+        // What rounding leaves of an exact zero is no effect.
+        shifts.push(CommonShift { cause, u, shift: [settled(shift[0], a), settled(shift[1], b)] });
     }
     Ok(shifts)
 }
 
-/// Largest standard uncertainty of a common cause among the points: relative, or kelvin for temperature.
-fn largest_u(samples: &[Sample], cause: Cause, u_viscosity: f64) -> f64 {
+/// A shift, or zero where it is below the rounding of the coefficient it moves.
+fn settled(shift: f64, coefficient: f64) -> f64 {
+    if shift.abs() < 1e-12 * coefficient.abs() { 0.0 } else { shift }
+}
+
+/// Largest standard uncertainty of a common cause among the points as stated: relative, kelvin for temperature, pascal
+/// for a zero; nothing where several sources make up the cause.
+fn largest_u(samples: &[Sample], cause: Cause, u_viscosity: f64) -> Option<f64> {
     let of = |wanted: Source, relative_to: fn(&Sample) -> f64| {
         let u = |s: &Sample| {
             let (_, parts, _) = s.sources.iter().find(|(source, _, _)| *source == wanted)?;
             parts.common.map(|u| u / relative_to(s))
         };
-        samples.iter().filter_map(u).fold(0.0, f64::max)
+        samples.iter().filter_map(u).reduce(f64::max)
+    };
+    let any = |sources: &[Source]| {
+        let shared = |s: &Sample| s.sources.iter().any(|(of, parts, _)| sources.contains(of) && parts.common.is_some());
+        samples.iter().any(shared)
     };
     match cause {
-        Cause::Viscosity => u_viscosity,
+        Cause::Viscosity => Some(u_viscosity),
+        Cause::ReferenceFlow if any(&[Source::ReferenceTemperature, Source::ReferencePressure]) => None,
         Cause::ReferenceFlow => of(Source::ReferenceFlow, |s| s.reference_flow.abs()),
         Cause::PressureDrop => of(Source::PressureDrop, |s| s.pressure_drop.abs()),
+        Cause::Density if any(&[Source::RelativeHumidity]) => None,
         Cause::Density => of(Source::LinePressure, |s| s.line_pressure),
         Cause::Temperature => of(Source::Temperature, |_| 1.0),
         Cause::PressureDropZero => of(Source::PressureDrop, |_| 1.0),
-        Cause::Geometry => 0.0,
+        Cause::Geometry => None,
     }
+}
+
+/// The relative error of flow or density that would have the effects of a cause.
+fn as_relative(samples: &[Sample], cause: Cause, effects: &[f64], a: f64, b: f64) -> f64 {
+    let of_unity = |s: &Sample| match cause {
+        Cause::ReferenceFlow => a * s.columns.u + 2.0 * b * s.columns.v,
+        _ => s.columns.y,
+    };
+    samples.iter().zip(effects).map(|(s, effect)| (effect / of_unity(s)).abs()).fold(0.0, f64::max)
 }

@@ -4,9 +4,10 @@ use crate::calibrate::certainty::{budget, uncertainty_rows};
 use crate::calibrate::findings::{self, Run};
 use crate::calibrate::fit::{self, Prior, Solution, UNFIXED_B};
 use crate::calibrate::outcome::{Calibration, CommonEffect, Finding, GeometryRatio, Range, ResidualRow};
-use crate::calibrate::samples::{Sample, Setup};
+use crate::calibrate::samples::{Sample, Setup, Slope, Source};
 use crate::input::points::{Point, Points};
 use crate::input::problem::Problem;
+use crate::input::uncertain::Parts;
 use evenbore::calibration::{Cause, CommonPart, Quality};
 use evenbore::fluid::StoredFluid;
 use evenbore::quantity::Temperature;
@@ -70,6 +71,7 @@ pub fn calibrate(points: &Points, order: &Order<'_>) -> Result<Verdict, Problem>
     };
     let mut findings = findings::diagnose(&run).map_err(general)?;
     name_other_fluids(&mut findings, points, order);
+    findings.iter_mut().for_each(|finding| finding.message.push('.'));
     let refused = findings.iter().any(|finding| finding.refuses);
     let record = record(order, &solution, &used).map_err(|e| Problem::new(&points.file, e.to_string()))?;
     let calibration = outcome(points, order, &run, &all, findings, &record);
@@ -96,10 +98,44 @@ fn samples(points: &Points, order: &Order<'_>) -> Result<Vec<Sample>, Problem> {
             let message = "pressure_drop is 0 beside a flow: a point needs a pressure drop";
             return Err(Problem::new(&points.file, message).at_line(point.line));
         }
-        Sample::new(&setup, point).map_err(|refusal| refused(points, point, order.fluid, refusal))
+        let sample = Sample::new(&setup, point).map_err(|refusal| refused(points, point, order.fluid, refusal))?;
+        match senseless(&sample) {
+            Some(message) => Err(Problem::new(&points.file, message).at_line(point.line)),
+            None => Ok(sample),
+        }
     };
     points.points.iter().map(sample).collect()
 }
+
+/// x = mdot/mu beyond which a point is no flow of any element, m.
+const LARGEST_X: f64 = 1e8;
+
+/// Says why the numbers of a point cannot be meant, where they cannot.
+fn senseless(sample: &Sample) -> Option<String> {
+    let x = sample.columns.x;
+    if !(x > 1.0 / LARGEST_X && x < LARGEST_X && sample.columns.y.is_finite()) {
+        let (flow, drop) = (sample.mass_flow, sample.pressure_drop);
+        return Some(format!("a mass flow of {flow:e} kg/s at a pressure drop of {drop:e} Pa is that of no element"));
+    }
+    let too_large = |(source, parts, _): &(Source, Parts, Slope)| {
+        let u = parts.independent.unwrap_or(0.0).max(parts.common.unwrap_or(0.0));
+        let (name, value, unit) = match source {
+            Source::PressureDrop => ("pressure drop", sample.pressure_drop.abs(), " Pa"),
+            Source::LinePressure => ("line pressure", sample.line_pressure, " Pa"),
+            Source::Temperature | Source::ReferenceTemperature => ("temperature", LARGEST_U_TEMPERATURE, " K"),
+            Source::ReferenceFlow => ("reference flow", sample.reference_flow.abs(), " in SI"),
+            Source::ReferencePressure => ("reference pressure", sample.line_pressure, " Pa"),
+            Source::RelativeHumidity => ("relative humidity", 1.0, ""),
+        };
+        let limit =
+            format!("the standard uncertainty of the {name} is {u:e}{unit}, beyond what can be meant, {value:e}");
+        (u > value).then_some(limit)
+    };
+    sample.sources.iter().find_map(too_large)
+}
+
+/// Kelvin beyond which a standard uncertainty of temperature is a slip.
+const LARGEST_U_TEMPERATURE: f64 = 30.0;
 
 /// Why the fluid cannot serve a point, with values and limits.
 fn refused(points: &Points, point: &Point, fluid: &StoredFluid, refusal: Refusal) -> Problem {

@@ -173,7 +173,8 @@ fn summary(verdict: &Verdict, folder: &Path) -> String {
     let mut line = |words: String| writeln!(text, "{words}").unwrap_or_default();
     line(format!("{} on {}: {}", c.serial, c.fluid, sentence(c)));
     line(format!("  A = {:.6e} 1/m3, standard uncertainty {:.3} %", c.a, 100.0 * c.u_a / c.a));
-    line(format!("  B = {:.4e} 1/m4, standard uncertainty {:.2} %", c.b, 100.0 * c.u_b / c.b.abs()));
+    let u_b = if c.b == 0.0 { "held".into() } else { format!("{:.2} %", 100.0 * c.u_b / c.b.abs()) };
+    line(format!("  B = {:.4e} 1/m4, standard uncertainty {u_b}", c.b));
     if let (Some(a), Some(b)) = (c.geometry.a_ratio, c.geometry.b_ratio) {
         line(format!("  against the drawing: A {a:.4}, B {b:.3}"));
     }

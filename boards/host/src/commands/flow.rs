@@ -22,7 +22,7 @@ use evenbore_bench::record_file;
 use evenbore_bench::resources::elements::{has_nominal_coefficients, nominal};
 use evenbore_bench::resources::fluids::Fluids;
 use serde::Serialize;
-use std::io::Write;
+use std::io::{IsTerminal, Write};
 use std::path::PathBuf;
 
 /// Arguments of `evenbore flow`.
@@ -75,6 +75,9 @@ struct Summary {
     status: std::collections::BTreeMap<String, u64>,
 }
 
+/// Readings between two signs of life on a terminal.
+const PROGRESS: u64 = 200_000;
+
 /// Runs the command.
 pub fn run(arguments: &Arguments) -> Result<Ended, Problem> {
     let origin = Origin::open(arguments)?;
@@ -84,6 +87,7 @@ pub fn run(arguments: &Arguments) -> Result<Ended, Problem> {
     let mut meters = Meters::new(arguments, &origin, &fluids);
     let mut results = Results::create(arguments, &table)?;
     let mut first = true;
+    let watched = std::io::stderr().is_terminal() && arguments.out.as_os_str() != "-";
     while let Some(row) = table.next_row()? {
         if plan.is_silent(&row) {
             results.write(row.raw(), &Err(Refusal::NOT_FINITE))?;
@@ -100,6 +104,9 @@ pub fn run(arguments: &Arguments) -> Result<Ended, Problem> {
         let sensors = stated(&reading, meter.sensors());
         let flow = meter.flow_with(&as_reading(&reading), &sensors);
         results.write(row.raw(), &flow)?;
+        if watched && results.summary.readings % PROGRESS == 0 {
+            eprint!("\r{} readings", results.summary.readings);
+        }
     }
     results.finish(arguments)?;
     Ok(Ended::Done)
@@ -300,11 +307,17 @@ impl Results {
                 self.record.clear();
                 Ok(())
             }
-            Err(error) => Err(self.explain(error.into())),
+            Err(error) => Err(self.explain(error)),
         }
     }
 
-    fn explain(&self, error: std::io::Error) -> Problem {
+    /// The system's own error, which says whether a pipe was closed, out of its wrapping.
+    fn explain(&self, error: csv::Error) -> Problem {
+        let message = error.to_string();
+        let error = match error.into_kind() {
+            csv::ErrorKind::Io(error) => error,
+            _ => std::io::Error::other(message),
+        };
         self.writer.get_ref().problem(&error)
     }
 

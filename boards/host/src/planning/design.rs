@@ -1,9 +1,9 @@
 //! One candidate element: its sizes, and what the law and the instrument say of it.
 
 use crate::input::element_file::{ElementFile, Shape};
-use crate::planning::sizing::Task;
 use crate::planning::state::State;
 use crate::planning::stock::{BUNDLE_FILL, EXPANSION_PER_K, OUTER_OVER_BORE, PLATE_MM, REFERENCE_TEMPERATURE_C};
+use crate::planning::task::Task;
 use crate::resources::elements::nominal;
 use evenbore::calibration::{Cause, CommonPart, Quality};
 use evenbore::quantity::Temperature;

@@ -10,9 +10,8 @@ use crate::planning::state::State;
 use crate::planning::stock::{
     BORES_MM, GAPS_MM, LENGTH_LIMITS_MM, LENGTH_STEP_MM, LENGTHS_MM, SLOT_WIDTHS_MM, WIDTH_OVER_GAP,
 };
+use crate::planning::task::Task;
 use crate::resources::elements::nominal;
-use evenbore::fluid::StoredFluid;
-use evenbore::reading::SensorUncertainty;
 use std::collections::BTreeMap;
 
 /// Step in which uncertainties at a tenth of full scale are told apart (0.05 %).
@@ -21,60 +20,6 @@ const UNCERTAINTY_STEP: f64 = 5e-4;
 /// How the shortlist is sorted.
 pub const ORDER: &str =
     "shape; expanded uncertainty at 10 % of full scale in steps of 0.05 %, then fewer channels, then shorter";
-
-/// Shapes to look at.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub struct Shapes {
-    /// Round tubes.
-    pub tubes: bool,
-    /// Parallel plates.
-    pub plates: bool,
-}
-
-impl Shortlist {
-    /// Keeps the first `most` designs of each shape.
-    pub fn keep(&mut self, most: usize) {
-        let mut kept: BTreeMap<&str, usize> = BTreeMap::new();
-        self.designs.retain(|design| {
-            let count = kept.entry(design.shape).or_default();
-            *count += 1;
-            *count <= most
-        });
-    }
-}
-
-/// What an element is sized for.
-#[derive(Debug, Clone, Copy)]
-pub struct Task<'a> {
-    /// The fluid.
-    pub fluid: &'a StoredFluid,
-    /// Full-scale volume flow at line conditions, m3/s.
-    pub flow: f64,
-    /// Pressure drop that full scale may need, Pa.
-    pub pressure_drop: f64,
-    /// Lowest and highest temperature, K.
-    pub range: [f64; 2],
-    /// Absolute line pressure, Pa.
-    pub line_pressure: f64,
-    /// Shapes to look at.
-    pub shapes: Shapes,
-    /// Sensors of the instrument.
-    pub sensors: SensorUncertainty,
-    /// Common part of the reference flow of the calibration to come, relative.
-    pub u_common: f64,
-    /// Type A part that its fit is expected to leave, relative.
-    pub u_fit: f64,
-    /// Most channels.
-    pub most_channels: u32,
-}
-
-impl Task<'_> {
-    /// Temperatures at which a design is judged: the ends of the range and its middle.
-    pub fn temperatures(&self) -> Vec<f64> {
-        let [low, high] = self.range;
-        if high > low { vec![low, 0.5 * (low + high), high] } else { vec![low] }
-    }
-}
 
 /// The shortlist and what was left out.
 #[derive(Debug, Clone, PartialEq)]
@@ -87,6 +32,18 @@ pub struct Shortlist {
     pub accepted: usize,
     /// How many were rejected, by reason.
     pub rejected: BTreeMap<Reject, usize>,
+}
+
+impl Shortlist {
+    /// Keeps the first `most` designs of each shape.
+    pub fn keep(&mut self, most: usize) {
+        let mut kept: BTreeMap<&str, usize> = BTreeMap::new();
+        self.designs.retain(|design| {
+            let count = kept.entry(design.shape).or_default();
+            *count += 1;
+            *count <= most
+        });
+    }
 }
 
 /// Sizes elements for a task.

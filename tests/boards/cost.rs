@@ -1,0 +1,125 @@
+//! What the library costs on a machine, the table that says so and the budget that holds it.
+
+use super::image::{Sizes, sizes};
+use super::machine::Machine;
+use std::collections::BTreeMap;
+
+/// How far a limit may lie above what is counted before it has to be tightened.
+const SLACK: f64 = 1.25;
+
+/// What one piece of work costs.
+struct Work {
+    mean: u32,
+    worst: u32,
+    stack: u32,
+}
+
+/// What the library costs on one machine.
+pub struct Costs {
+    work: BTreeMap<String, Work>,
+    core: Sizes,
+    record: Sizes,
+}
+
+impl Costs {
+    /// Counts on a machine.
+    pub fn of(machine: &Machine) -> Self {
+        let printed = machine.run("cost");
+        let work = printed.lines().map(|line| match line.split(' ').collect::<Vec<_>>()[..] {
+            [name, mean, worst, stack] => {
+                let [mean, worst, stack] = [mean, worst, stack].map(|n| n.parse().unwrap());
+                (name.to_owned(), Work { mean, worst, stack })
+            }
+            _ => panic!("{}: cost printed {line}", machine.name),
+        });
+        let empty = sizes(&machine.image("size_empty"));
+        let over = |program| {
+            let whole = sizes(&machine.image(program));
+            Sizes { flash: whole.flash - empty.flash, ram: whole.ram - empty.ram }
+        };
+        Self { work: work.collect(), core: over("size_core"), record: over("size_record") }
+    }
+
+    fn worst(&self, work: &str) -> u32 {
+        self.work[work].worst
+    }
+
+    /// What the budget limits, in the order of its file.
+    fn limited(&self) -> [(&'static str, u32); 9] {
+        [
+            ("sample", self.worst("sample")),
+            ("full", self.worst("full")),
+            ("flow", self.worst("flow")),
+            ("decode", self.worst("decode")),
+            ("stack", ["sample", "full", "flow"].map(|work| self.work[work].stack).into_iter().max().unwrap()),
+            ("decode-stack", self.work["decode"].stack),
+            ("flash", self.core.flash),
+            ("record-flash", self.record.flash),
+            ("ram", self.core.ram.max(self.record.ram)),
+        ]
+    }
+}
+
+/// What is wrong with a budget, a line each: a limit exceeded, far too wide, missing, or of nothing.
+pub fn complaints(found: &[(Machine, Costs)], budget: &str) -> Vec<String> {
+    let mut limits = BTreeMap::new();
+    for line in budget.lines().filter(|line| !line.starts_with('#') && !line.is_empty()) {
+        let (name, limit) = line.rsplit_once(' ').unwrap_or_else(|| panic!("no limit: {line}"));
+        let limit: u32 = limit.parse().unwrap_or_else(|_| panic!("not a number: {line}"));
+        assert!(limits.insert(name.to_owned(), limit).is_none(), "twice: {line}");
+    }
+    let mut complaints = Vec::new();
+    for (machine, costs) in found {
+        for (quantity, value) in costs.limited() {
+            let name = format!("{} {quantity}", machine.name);
+            match limits.remove(&name) {
+                None => complaints.push(format!("{name} {value} is missing")),
+                Some(limit) if value > limit => complaints.push(format!("{name} {limit} is exceeded: {value}")),
+                Some(limit) if f64::from(limit) > SLACK * f64::from(value) && limit > 0 => {
+                    complaints.push(format!("{name} {limit} is too wide: {value}"));
+                }
+                Some(_) => {}
+            }
+        }
+    }
+    complaints.extend(limits.into_keys().map(|name| format!("{name} is no machine's quantity")));
+    complaints
+}
+
+/// The table of costs.
+pub fn table(found: &[(Machine, Costs)]) -> String {
+    let names: Vec<&str> = found.iter().map(|(machine, _)| machine.name.as_str()).collect();
+    let mut text = format!("{HEAD}| | {} |\n{}|\n", names.join(" | "), "|---".repeat(names.len() + 1));
+    let mut row = |name: &str, cell: &dyn Fn(&Costs) -> String| {
+        let cells: Vec<String> = found.iter().map(|(_, costs)| cell(costs)).collect();
+        text += &format!("| {name} | {} |\n", cells.join(" | "));
+    };
+    for (name, work) in WORK {
+        row(name, &|c| format!("{} ({})", c.work[work].mean, c.work[work].worst));
+    }
+    row("flash, B: walk and one fluid", &|c| c.core.flash.to_string());
+    row("flash, B: record and walk", &|c| c.record.flash.to_string());
+    row("static RAM, B", &|c| c.core.ram.max(c.record.ram).to_string());
+    for (name, work) in WORK {
+        row(&format!("stack, B: {name}"), &|c| c.work[work].stack.to_string());
+    }
+    text
+}
+
+const HEAD: &str = "\
+# What evenbore costs
+
+Counted on emulated machines; written by `EVENBORE_BLESS=1 cargo test --test boards`, held by `budget.txt`.
+Instructions are the mean (and the largest) of 100 readings of nitrogen, call and return included; an emulator counts
+instructions, not cycles. Flash is `.text` and `.rodata` over an image that does nothing, optimised for speed.
+
+";
+
+/// Rows of the table and the names `cost` prints.
+const WORK: [(&str, &str); 5] = [
+    ("simple model by hand (`powf`, no checks)", "baseline"),
+    ("sample at prepared conditions", "sample"),
+    ("conditions and sample", "full"),
+    ("whole walk with uncertainty", "flow"),
+    ("record decoded and checked", "decode"),
+];
