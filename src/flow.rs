@@ -202,6 +202,17 @@ impl<'a> Meter<'a> {
         Ok(Flow { sample, sensitivities, uncertainty })
     }
 
+    /// Relative standard uncertainty of the viscosity at a reading, as far as it does not cancel against the
+    /// calibration: of the fluid's data, and of the water in moist air.
+    ///
+    /// # Errors
+    /// The reasons for which no flow can be given.
+    pub fn viscosity_uncertainty(&self, reading: &Reading) -> Result<[f32; 2], Refusal> {
+        let reading = self.trims.apply(reading);
+        let conditions = self.conditions(reading.temperature, reading.line_pressure, reading.relative_humidity)?;
+        Ok([self.u_viscosity(reading.temperature), conditions.state.moisture.u_viscosity])
+    }
+
     /// Prepares all that depends on temperature, line pressure and humidity (trimmed values).
     ///
     /// # Errors

@@ -17,3 +17,5 @@ pub mod calibrate; // points into coefficients, findings and a verdict
 pub mod record_file; // the record as text and bytes
 
 pub mod report; // the outcome as one page
+
+pub mod planning; // before and after a calibration: sizes, points, what to expect

@@ -3,7 +3,7 @@
 mod commands;
 
 use clap::{Parser, Subcommand};
-use commands::{Ended, calibrate, flow, fluid};
+use commands::{Ended, calibrate, flow, fluid, plan, predict, size};
 use std::process::ExitCode;
 
 /// Calibrates laminar flow elements and computes viscosity-compensated flow from their readings.
@@ -44,7 +44,31 @@ enum Command {
     /// good, or what a flow is flagged with, or why there is none, in which case its cells are empty.
     #[command(after_long_help = "Example:\n  evenbore flow day.csv --record EB-0042/record.toml --out flows.csv")]
     Flow(flow::Arguments),
-    /// Show the stored fluids
+    /// Propose elements for a flow and a pressure drop
+    ///
+    /// Stock bores or gaps are counted and cut to length by the law until full-scale flow needs the pressure drop at
+    /// the worst temperature; each is judged by Reynolds number, kinetic loss, L/D, slip and expansion, and by the
+    /// uncertainty that the instrument would state after a calibration of the stated quality.
+    #[command(after_long_help = "Example:\n  evenbore size --fluid air --full-scale 20L_min --temperature 10C..40C")]
+    Size(size::Arguments),
+    /// Plan a calibration: the fewest points that reach a target
+    ///
+    /// Trial runs go through the fit that a real run goes through. The target is an expanded uncertainty (k = 2) and
+    /// holds at every flow of the range, by default with the sensors in use, which are those of the bench. Errors of
+    /// the sensors and the first part of the reference's are taken as independent from point to point.
+    #[command(
+        after_long_help = "Example:\n  evenbore plan --element element.toml --fluid nitrogen --target 0.6pct --out plan.csv"
+    )]
+    Plan(plan::Arguments),
+    /// Predict what a calibrated element is worth on another fluid or at another temperature
+    ///
+    /// Flows, status and uncertainty are the instrument's own. The budget names each source with its share; its sum is
+    /// the uncertainty that the instrument states.
+    #[command(
+        after_long_help = "Example:\n  evenbore predict --record EB-0042/record.toml --fluid helium --temperature 40C --out there"
+    )]
+    Predict(predict::Arguments),
+    /// Show the stored fluids, build tables of your own
     #[command(subcommand)]
     Fluid(fluid::Arguments),
 }
@@ -53,6 +77,9 @@ fn main() -> ExitCode {
     let ended = match Arguments::parse().command {
         Command::Calibrate(arguments) => calibrate::run(&arguments),
         Command::Flow(arguments) => flow::run(&arguments),
+        Command::Size(arguments) => size::run(&arguments),
+        Command::Plan(arguments) => plan::run(&arguments),
+        Command::Predict(arguments) => predict::run(&arguments),
         Command::Fluid(arguments) => fluid::run(&arguments),
     };
     match ended {

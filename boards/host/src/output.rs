@@ -101,6 +101,16 @@ impl Write for Sink {
     }
 }
 
+/// A number in the fewest digits that give its bits back.
+///
+/// ```
+/// use evenbore_bench::output::shortest;
+/// assert_eq!((shortest(0.1), shortest(2.5e-5)), ("0.1".to_string(), "2.5e-5".to_string()));
+/// ```
+pub fn shortest(value: f32) -> String {
+    if (1e-4..1e7).contains(&value.abs()) || value == 0.0 { format!("{value}") } else { format!("{value:e}") }
+}
+
 /// Writes a whole file, or to standard output for `-`.
 ///
 /// * `path`: as the user gave it

@@ -4,13 +4,13 @@
 //! `report/page.html` with every value escaped; figures are drawn by the modules below and hold no text of the user's
 //! that has not been escaped.
 
-mod numbers; // rounding and typography of numbers
+pub(crate) mod numbers; // rounding and typography of numbers
 
-mod axis; // scales and ticks
+pub(crate) mod axis; // scales and ticks
 
-mod figure; // SVG primitives
+pub(crate) mod figure; // SVG primitives
 
-mod key; // keys of figures
+pub(crate) mod key; // keys of figures
 
 mod label; // labels that keep clear of each other
 
@@ -18,9 +18,9 @@ mod characteristic; // figure 1
 
 mod residuals; // figure 2
 
-mod range; // figure 3
+pub(crate) mod range; // figure 3
 
-mod words; // sentences
+pub(crate) mod words; // sentences
 
 mod tables; // rows of the tables
 
@@ -31,7 +31,8 @@ use numbers::MISSING;
 use residuals::LITRES_PER_MINUTE;
 
 const PAGE: &str = include_str!("report/page.html");
-const STYLE: &str = include_str!("report/style.css");
+/// Style of every page and figure.
+pub(crate) const STYLE: &str = include_str!("report/style.css");
 
 /// Where a report comes from: what ran, on what, and what it wrote.
 #[derive(Debug, Clone, PartialEq, Eq, Default)]

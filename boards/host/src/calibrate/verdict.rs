@@ -61,7 +61,7 @@ pub fn calibrate(points: &Points, order: &Order<'_>) -> Result<Verdict, Problem>
     check_spread(points, &used)?;
     let general = |error: crate::statistics::StatisticsError| Problem::new(&points.file, error.to_string());
     let u_viscosity = f64::from(order.fluid.u_viscosity());
-    let solution = best_fit(&used, order, u_viscosity).map_err(general)?;
+    let solution = best_fit(&used, nominal(order), u_viscosity).map_err(general)?;
     let run = Run {
         samples: &used,
         solution: &solution,
@@ -193,10 +193,15 @@ fn span(samples: &[Sample]) -> (f64, f64) {
 }
 
 /// The fit, with B held by geometry (or at zero, where there is none) when the data do not fix it.
-fn best_fit(used: &[Sample], order: &Order<'_>, u_viscosity: f64) -> crate::statistics::Result<Solution> {
+///
+/// `nominal`: A and B of the drawing; `u_viscosity`: relative, common to all points.
+///
+/// # Errors
+/// Points that cannot fix the coefficients.
+pub fn best_fit(used: &[Sample], nominal: Option<[f64; 2]>, u_viscosity: f64) -> crate::statistics::Result<Solution> {
     let free = fit::fit(used, u_viscosity, None)?;
     let [_, u_b] = free.covariance.standard_uncertainties();
-    let prior = match nominal(order) {
+    let prior = match nominal {
         Some([_, b]) if free.b <= 0.0 || u_b > UNFIXED_B * free.b => Prior { value: b, u: fit::PRIOR_B * b },
         None if free.b < 0.0 => Prior { value: 0.0, u: 0.01 * free.b.abs() },
         _ => return Ok(free),
@@ -232,8 +237,8 @@ fn distance_from_drawing(points: &Points, order: &Order<'_>, fluid: &StoredFluid
 /// Fluids named at most when the declared one does not fit.
 const MOST_NAMES: usize = 3;
 
-/// The record of a fit.
-fn record(order: &Order<'_>, solution: &Solution, used: &[Sample]) -> Result<Record, evenbore::error::Error> {
+/// What a fit says of the element beyond A and B.
+pub fn quality(solution: &Solution, used: &[Sample]) -> Quality {
     let (x_min, x_max) = span(used);
     let [u_a, u_b] = solution.covariance.standard_uncertainties();
     let dof = solution.type_a_degrees_of_freedom();
@@ -242,7 +247,7 @@ fn record(order: &Order<'_>, solution: &Solution, used: &[Sample]) -> Result<Rec
         effect_a: (shift.shift[0] / solution.a) as f32,
         effect_b_m: (shift.shift[1] / solution.a) as f32,
     };
-    let quality = Quality {
+    Quality {
         u_a: (u_a / solution.a) as f32,
         u_b_m: (u_b / solution.a) as f32,
         correlation: solution.covariance.correlation() as f32,
@@ -251,7 +256,12 @@ fn record(order: &Order<'_>, solution: &Solution, used: &[Sample]) -> Result<Rec
         x_min_m: x_min as f32,
         x_max_m: x_max as f32,
         temperature_k: Temperature::from_kelvin(mean(used, |s| s.temperature) as f32),
-    };
+    }
+}
+
+/// The record of a fit.
+fn record(order: &Order<'_>, solution: &Solution, used: &[Sample]) -> Result<Record, evenbore::error::Error> {
+    let quality = quality(solution, used);
     let element = order.element.with_coefficients(solution.a as f32, solution.b.max(0.0) as f32)?;
     let (year, month, day) = order.date;
     let date = year as u32 * 10_000 + month as u32 * 100 + day as u32;

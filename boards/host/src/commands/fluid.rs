@@ -1,6 +1,6 @@
 //! `evenbore fluid`: what is stored of each fluid, and its properties at a state.
 
-use super::{Ended, json, print};
+use super::{Ended, fluid_build, json, print};
 use clap::{Args, Subcommand};
 use evenbore::fluid::{Phase, StoredFluid, catalogue};
 use evenbore::quantity::{AbsolutePressure, RelativeHumidity, Temperature};
@@ -8,10 +8,12 @@ use evenbore::status::Refusal;
 use evenbore_bench::input::problem::Problem;
 use evenbore_bench::input::units::Quantity;
 use evenbore_bench::input::written::parse_quantity;
+use evenbore_bench::output::write_whole;
+use evenbore_bench::planning::fluid_plot;
 use evenbore_bench::resources::fluids::Fluids;
 use serde::Serialize;
 use std::fmt::Write;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 
 /// Arguments of `evenbore fluid`.
 #[derive(Debug, Subcommand)]
@@ -20,6 +22,14 @@ pub enum Arguments {
     List(ListArguments),
     /// Print viscosity and density of one fluid at a temperature and pressure
     Show(ShowArguments),
+    /// Build a stored table from measured values and say how well it meets them
+    ///
+    /// The lines written declare the fluid in a fluids file, which names the data and does not copy them: keep both
+    /// together. A row that the stored table misses by more than the limit refuses the build.
+    #[command(
+        after_long_help = "Example:\n  evenbore fluid build brine.csv --name brine --u-viscosity 0.5pct --out fluids.toml"
+    )]
+    Build(fluid_build::Arguments),
 }
 
 /// Arguments of `evenbore fluid list`.
@@ -47,6 +57,9 @@ pub struct ShowArguments {
     /// Relative humidity of air, as 50pct
     #[arg(long, value_name = "RH", value_parser = humidity)]
     relative_humidity: Option<f64>,
+    /// Draw viscosity over the table's range, dry, at the pressure
+    #[arg(long, value_name = "FILE.svg", conflicts_with = "relative_humidity")]
+    plot: Option<PathBuf>,
     /// Fluids of your own, TOML
     #[arg(long, value_name = "FLUIDS.toml")]
     fluids: Option<PathBuf>,
@@ -118,6 +131,7 @@ pub fn run(arguments: &Arguments) -> Result<Ended, Problem> {
     match arguments {
         Arguments::List(list) => run_list(list),
         Arguments::Show(show) => run_show(show),
+        Arguments::Build(build) => fluid_build::run(build),
     }
 }
 
@@ -181,12 +195,24 @@ fn run_show(arguments: &ShowArguments) -> Result<Ended, Problem> {
     let fluids = Fluids::open(arguments.fluids.as_deref())?;
     let fluid = fluids.find(&arguments.name).map_err(|message| Problem::new("fluid", message))?;
     let shown = properties(arguments, fluid);
+    if let Some(path) = &arguments.plot {
+        write_plot(path, fluid, arguments.pressure)?;
+    }
     if arguments.json {
         print(&json(&shown)?)?;
     } else {
         print(&show_text(&shown))?;
     }
     if shown.viscosity.is_some() { Ok(Ended::Done) } else { Err(outside(fluid, &shown.status)) }
+}
+
+/// Draws the viscosity at a pressure (Pa) that the table has.
+fn write_plot(path: &Path, fluid: &StoredFluid, pressure: f64) -> Result<(), Problem> {
+    let [low, high] = fluid.pressure_range().map(|p| f64::from(p.as_pascals()));
+    if !(low..=high).contains(&pressure) {
+        return Err(outside(fluid, &Refusal::PRESSURE_OUTSIDE_TABLE.to_string()));
+    }
+    write_whole(path, fluid_plot::draw(fluid, pressure).as_bytes())
 }
 
 fn properties(arguments: &ShowArguments, fluid: &StoredFluid) -> Shown {

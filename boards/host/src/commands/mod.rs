@@ -3,6 +3,10 @@
 pub mod calibrate;
 pub mod flow;
 pub mod fluid;
+mod fluid_build;
+pub mod plan;
+pub mod predict;
+pub mod size;
 
 use clap::Args;
 use evenbore::quantity::{AbsolutePressure, Temperature};
@@ -91,6 +95,23 @@ fn parts(text: &str, quantity: Quantity) -> Result<UncertainParts, String> {
         return Err("an uncertainty cannot be negative".into());
     }
     Ok(parts)
+}
+
+/// Text broken into lines of at most 60 columns, the first one indented too, the further ones by `indent`.
+pub fn wrapped(text: &str, indent: usize) -> String {
+    let mut lines = format!("  {}", text.split(' ').next().unwrap_or_default());
+    let mut column = lines.chars().count();
+    for word in text.split(' ').skip(1) {
+        let length = word.chars().count();
+        if column + 1 + length > 60 {
+            lines += &format!("\n{:indent$}{word}", "");
+            column = indent + length;
+        } else {
+            lines += &format!(" {word}");
+            column += 1 + length;
+        }
+    }
+    lines
 }
 
 /// Prints to standard output; a reader that went away ends the command in silence.

@@ -18,6 +18,9 @@ const EXPANSION: Limits = Limits::new(0.0, 5e-3, "1/K");
 const U_VISCOSITY: Limits = Limits::new(0.0, 1.0, "");
 const MOLAR_MASS: Limits = Limits::new(1.0, 1000.0, "g/mol");
 const PRESSURE: Limits = Limits::new(1.0, 20_000.0, "kPa");
+const RESIDUAL: Limits = Limits::new(1e-6, 0.05, "");
+/// Share of a row's value by which a stored curve may miss it when the file says nothing.
+pub const USUAL_RESIDUAL: f64 = 1e-3;
 const MASS_FRACTION: Limits = Limits::new(0.0, 1.0, "");
 
 /// Pressure of a gas table that states none: the standard atmosphere, kPa.
@@ -29,7 +32,7 @@ const GLYCOLS: &[&str] = &["ethylene", "propylene"];
 const KEYS: [&[&str]; 3] = [
     &["kind", "kinematic_viscosity_mm2_s", "density_kg_m3", "expansion_per_K", "u_viscosity_rel"],
     &["kind", "glycol", "mass_fraction", "u_viscosity_rel"],
-    &["kind", "data", "molar_mass_g_mol", "pressure_kPa", "u_viscosity_rel"],
+    &["kind", "data", "molar_mass_g_mol", "pressure_kPa", "u_viscosity_rel", "residual_limit_rel"],
 ];
 
 /// A fluid of the user's own.
@@ -72,6 +75,8 @@ pub enum DeclaredFluid {
         molar_mass_g_mol: Option<f64>,
         /// Absolute pressure at which a gas has the densities of its rows, kPa.
         pressure_kpa: f64,
+        /// Share of a row's value by which the stored curve may miss it.
+        residual_limit: f64,
     },
 }
 
@@ -180,5 +185,6 @@ fn table(keys: &Section<'_>, folder: &Path) -> Result<DeclaredFluid, Problem> {
         return Err(keys.problem("pressure_kPa", message));
     }
     let pressure_kpa = keys.optional_number("pressure_kPa", PRESSURE)?.unwrap_or(STANDARD_PRESSURE);
-    Ok(DeclaredFluid::Table { rows: read_rows(&data)?, data, molar_mass_g_mol, pressure_kpa })
+    let residual_limit = keys.optional_number("residual_limit_rel", RESIDUAL)?.unwrap_or(USUAL_RESIDUAL);
+    Ok(DeclaredFluid::Table { rows: read_rows(&data)?, data, molar_mass_g_mol, pressure_kpa, residual_limit })
 }

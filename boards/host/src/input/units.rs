@@ -70,6 +70,8 @@ pub const MASS_FLOW: &[Unit] = &[
     Unit::of("g_min", 1.0, 60e3),
     Unit::of("mg_min", 1.0, 60e6),
 ];
+/// Units of molar mass, to kg/mol.
+pub const MOLAR_MASS: &[Unit] = &[Unit::of("kg_mol", 1.0, 1.0), Unit::of("g_mol", 1.0, 1e3)];
 const TIME: &[Unit] = &[Unit::of("s", 1.0, 1.0), Unit::of("ms", 1.0, 1e3)];
 const PRESSURE: &[Unit] = &[
     Unit::of("Pa", 1.0, 1.0),

@@ -4,7 +4,7 @@ use crate::input::{
     header::{listed, meant},
     number::number,
     problem::shown,
-    units::{Quantity, Unit, VOLUME_FLOW},
+    units::{MOLAR_MASS, Quantity, RELATIVE, Unit, VOLUME_FLOW},
 };
 
 /// Reference conditions of a standard flow.
@@ -55,6 +55,48 @@ pub fn parse_quantity(text: &str, quantity: Quantity) -> Result<f64, String> {
 /// ```
 pub fn parse_interval(text: &str, quantity: Quantity) -> Result<f64, String> {
     converted(text.trim(), quantity.units(), Unit::interval_to_si)
+}
+
+/// Reads a value, or two with `..` between, the lower first.
+///
+/// * `text`: such as `20C` or `10C..40C`
+/// * `read`: what reads one value
+///
+/// # Errors
+/// What `read` says; also when the first value exceeds the second.
+///
+/// ```
+/// use evenbore_bench::input::written::{parse_share, parse_span};
+/// assert_eq!(parse_span("10pct..100pct", parse_share), Ok([0.1, 1.0]));
+/// assert_eq!(parse_span("0.5rel", parse_share), Ok([0.5, 0.5]));
+/// assert!(parse_span("40pct..20pct", parse_share).is_err());
+/// ```
+pub fn parse_span(text: &str, read: impl Fn(&str) -> Result<f64, String>) -> Result<[f64; 2], String> {
+    let Some((low, high)) = text.split_once("..") else { return read(text).map(|value| [value; 2]) };
+    let span = [read(low)?, read(high)?];
+    if span[0] <= span[1] {
+        return Ok(span);
+    }
+    Err(format!("{} falls: the lower end comes first, as in 10C..40C", shown(text.as_bytes())))
+}
+
+/// Reads a share, such as `0.3pct` or `0.003rel`.
+///
+/// # Errors
+/// A message that repeats the text and lists the accepted units; also for a negative share.
+pub fn parse_share(text: &str) -> Result<f64, String> {
+    match with_unit(text.trim(), RELATIVE)? {
+        share if share < 0.0 => Err(format!("{} is negative", shown(text.as_bytes()))),
+        share => Ok(share),
+    }
+}
+
+/// Reads a molar mass, such as `44.01g_mol`, in kg/mol.
+///
+/// # Errors
+/// A message that repeats the text and lists the accepted units.
+pub fn parse_molar_mass(text: &str) -> Result<f64, String> {
+    with_unit(text.trim(), MOLAR_MASS)
 }
 
 /// Reads reference conditions: a temperature and an absolute pressure with a comma between, in either order.

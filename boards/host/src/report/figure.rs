@@ -172,6 +172,16 @@ impl Figure {
         format!("{}<g class=\"{class}\">\n{}</g>\n</svg>", self.head, self.body)
     }
 
+    /// The finished drawing as a file of its own, with the style it needs.
+    pub fn finish_alone(self, style: &str) -> String {
+        let (width, height) = (self.width, self.height);
+        let root = format!("<svg xmlns=\"http://www.w3.org/2000/svg\" width=\"{width}\" height=\"{height}\" ");
+        let ground = format!(
+            "<style>\n{style}</style>\n<rect width=\"{width}\" height=\"{height}\" fill=\"#fff\"/>\n<g class=\""
+        );
+        self.finish().replacen("<svg ", &root, 1).replacen("<g class=\"", &ground, 1)
+    }
+
     /// A position brought inside the drawing.
     fn inside(&self, (x, y): (f64, f64)) -> (f64, f64) {
         let bounded = |v: f64, limit: f64| if v.is_nan() { 0.0 } else { v.clamp(0.0, limit) };

@@ -22,8 +22,13 @@ const CURVES: [Curve; 4] = [
 
 /// Rows that can be drawn, from small flow to large.
 fn sorted(calibration: &Calibration) -> Vec<&UncertaintyRow> {
+    sound(&calibration.uncertainty)
+}
+
+/// Rows that can be drawn, from small flow to large.
+fn sound(rows: &[UncertaintyRow]) -> Vec<&UncertaintyRow> {
     let sound = |row: &&UncertaintyRow| row.flow.is_finite() && row.flow > 0.0 && row.expanded.is_finite();
-    let mut rows: Vec<&UncertaintyRow> = calibration.uncertainty.iter().filter(sound).collect();
+    let mut rows: Vec<&UncertaintyRow> = rows.iter().filter(sound).collect();
     rows.sort_by(|a, b| a.flow.total_cmp(&b.flow));
     rows
 }
@@ -71,12 +76,17 @@ pub fn at_share(calibration: &Calibration, share: f64) -> Option<UncertaintyRow>
 
 /// Draws the figure.
 pub fn draw(calibration: &Calibration, rendition: Rendition) -> String {
+    draw_rows(&calibration.uncertainty, rendition)
+}
+
+/// Draws the figure of any rows.
+pub fn draw_rows(rows: &[UncertaintyRow], rendition: Rendition) -> String {
     let title = "Relative uncertainty of flow over the range";
     let description = "Standard uncertainty from the fit, from what all points share, and from the sensors in use; \
                        and the expanded uncertainty of all three.";
     let id = format!("range-{}", rendition.class());
     let mut figure = Figure::new(&id, rendition, HEIGHT, title, description);
-    let rows = sorted(calibration);
+    let rows = sound(rows);
     let frame = frame(&rows, rendition);
     frame.draw(&mut figure, "flow, L/min", "relative uncertainty, %");
     for (_, class, part) in CURVES {

@@ -53,3 +53,43 @@ pub fn describe(file: &ElementFile) -> Vec<(String, String)> {
     sizes.push(("reference temperature", format!("{} C", file.reference_temperature_c)));
     sizes.into_iter().map(|(name, value)| (name.into(), value)).collect()
 }
+
+/// The text of an element file, as [`ElementFile::read`] takes it.
+///
+/// ```
+/// use evenbore_bench::input::{element_file::{ElementFile, Shape}, toml_text::TomlText};
+/// use evenbore_bench::resources::elements::as_toml;
+/// let file = ElementFile {
+///     serial: "EB-0042".into(),
+///     shape: Shape::RoundTubes { bore_mm: 0.44 },
+///     count: 120,
+///     length_mm: 120.0,
+///     expansion_per_k: 16e-6,
+///     reference_temperature_c: 20.0,
+/// };
+/// assert_eq!(ElementFile::read(&TomlText::new("element.toml", &as_toml(&file)))?, file);
+/// # Ok::<(), evenbore_bench::input::problem::Problem>(())
+/// ```
+pub fn as_toml(file: &ElementFile) -> String {
+    let (shape, sizes) = match file.shape {
+        Shape::RoundTubes { bore_mm } => ("round-tubes", vec![("bore_mm", bore_mm)]),
+        Shape::ParallelPlates { gap_mm, width_mm } => {
+            ("parallel-plates", vec![("gap_mm", gap_mm), ("width_mm", width_mm)])
+        }
+        Shape::Other { hydraulic_diameter_mm, open_area_mm2 } => {
+            let given = [("hydraulic_diameter_mm", hydraulic_diameter_mm), ("open_area_mm2", open_area_mm2)];
+            ("other", given.into_iter().filter_map(|(key, value)| Some((key, value?))).collect())
+        }
+    };
+    let serial = toml::Value::String(file.serial.clone());
+    let mut text = format!("serial = {serial}\nshape = \"{shape}\"\ncount = {}\n", file.count);
+    let further = [
+        ("length_mm", file.length_mm),
+        ("expansion_per_K", file.expansion_per_k),
+        ("reference_temperature_C", file.reference_temperature_c),
+    ];
+    for (key, value) in sizes.into_iter().chain(further) {
+        text += &format!("{key} = {value:?}\n");
+    }
+    text
+}

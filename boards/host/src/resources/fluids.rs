@@ -15,8 +15,6 @@ use std::path::Path;
 
 /// Uncertainty of a viscosity nobody stated: 1 % (common practice for a data sheet).
 const UNSTATED_U_VISCOSITY: f64 = 0.01;
-/// Share of a row's value by which a stored curve may miss it.
-const LARGEST_RESIDUAL: f64 = 1e-3;
 /// Compressibility factors a gas that a laminar element measures may have.
 const LEAST_Z: f64 = 0.8;
 const LARGEST_Z: f64 = 1.2;
@@ -75,7 +73,10 @@ impl Fluids {
 }
 
 /// Builds the stored table of a declared fluid.
-fn stored(declared: &NamedFluid) -> Result<StoredFluid, Error> {
+///
+/// # Errors
+/// Names the value that no table can hold.
+pub fn stored(declared: &NamedFluid) -> Result<StoredFluid, Error> {
     let u_viscosity = declared.u_viscosity_rel.unwrap_or(UNSTATED_U_VISCOSITY) as f32;
     match &declared.fluid {
         DeclaredFluid::Oil { kinematic_viscosity_mm2_s, density_kg_m3: [celsius, density], expansion_per_k } => {
@@ -166,21 +167,26 @@ impl Table<'_> {
 }
 
 /// Refuses a table whose stored curves miss its own rows, and gas rows that the molar mass contradicts.
-fn check_rows(declared: &NamedFluid, fluid: &StoredFluid) -> Result<(), Problem> {
-    let DeclaredFluid::Table { data, rows, molar_mass_g_mol, pressure_kpa } = &declared.fluid else { return Ok(()) };
+///
+/// # Errors
+/// Names the line, the value and the limit.
+pub fn check_rows(declared: &NamedFluid, fluid: &StoredFluid) -> Result<(), Problem> {
+    let DeclaredFluid::Table { data, rows, molar_mass_g_mol, pressure_kpa, residual_limit } = &declared.fluid else {
+        return Ok(());
+    };
     let file = data.display().to_string();
     for row in rows {
         let at = Properties::at(fluid, row.temperature);
         let pressure = pressure_kpa * 1e3;
         let found =
             [("viscosity", at.viscosity(pressure), row.viscosity), ("density", at.density(pressure), row.density)];
-        if let Some((what, stored, given)) = found.into_iter().find(|(_, s, g)| (s / g - 1.0).abs() > LARGEST_RESIDUAL)
-        {
+        if let Some((what, stored, given)) = found.into_iter().find(|(_, s, g)| (s / g - 1.0).abs() > *residual_limit) {
             let message = format!(
                 "[{}]: the stored curve gives a {what} of {stored:.5e} where the row has {given:.5e}, {:+.2} % (limit \
-                 0.1 %): rows this far from a smooth curve need a narrower range of temperature or a second look",
+                 {} %): rows this far from a smooth curve need a narrower range of temperature or a second look",
                 declared.name,
-                100.0 * (stored / given - 1.0)
+                100.0 * (stored / given - 1.0),
+                100.0 * residual_limit
             );
             return Err(Problem::new(file, message).at_line(row.line));
         }
