@@ -25,14 +25,21 @@ fn but(list: &[f64], j: usize) -> impl Iterator<Item = &f64> {
     list.iter().enumerate().filter(move |(k, _)| *k != j).map(|(_, x)| x)
 }
 
-/// Positions from the inlet to `length`: the first step `first`, each next `growth` times longer, none above `longest`.
+/// Length before the outlet over which steps shorten, and their shortest, as shares of the length and the longest step:
+/// a gas accelerates towards the outlet.
+const APPROACH: f64 = 0.5;
+const SHORTEST: f64 = 0.05;
+
+/// Positions from the inlet to `length`: the first step `first`, each next `growth` times longer, none above `longest`,
+/// shorter again towards the outlet.
 pub(crate) fn positions(length: f64, first: f64, growth: f64, longest: f64) -> Vec<f64> {
     let mut list = vec![0.0];
     let (mut z, mut step) = (0.0, first.min(length));
     while z + 1.5 * step < length {
         z += step;
         list.push(z);
-        step = (step * growth).min(longest);
+        let near = ((1.0 - z / length) / APPROACH).clamp(SHORTEST, 1.0);
+        step = (step * growth).min(longest * near);
     }
     list.push(length);
     list

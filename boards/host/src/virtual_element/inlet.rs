@@ -25,6 +25,15 @@ pub(crate) struct Place {
     pub state: State,
 }
 
+/// What the fluid's temperature does in the inlet.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(crate) enum Entrance {
+    /// It follows the isentrope.
+    Isentropic,
+    /// It stays.
+    Isothermal,
+}
+
 /// What the inlet makes of the plenum.
 #[derive(Debug, Clone, Copy)]
 pub(crate) struct Entered {
@@ -45,6 +54,7 @@ pub(crate) fn enter(
     reference: &Reference,
     plenum: &Place,
     flux: f64,
+    heat: Entrance,
 ) -> Result<Entered, Refused> {
     let (mut place, mut head, mut fall) = (*plenum, 0.0, 0.0);
     let mut change = f64::INFINITY;
@@ -59,7 +69,7 @@ pub(crate) fn enter(
         if !(fall < DEEPEST * plenum.pressure) {
             return Err(Refused::Vacuum { pressure: plenum.pressure - fall, position: 0.0 });
         }
-        (place, head) = expand(substance, reference, plenum, fall)?;
+        (place, head) = expand(substance, reference, plenum, fall, heat)?;
     }
     Err(Refused::NotSettled { what: "the inlet", change })
 }
@@ -70,14 +80,15 @@ fn expand(
     reference: &Reference,
     plenum: &Place,
     fall: f64,
+    heat: Entrance,
 ) -> Result<(Place, f64), Refused> {
     let step = -fall / STEPS as f64;
     let (mut p, mut t, mut head) = (plenum.pressure, plenum.temperature, 0.0);
     for _ in 0..STEPS {
-        let (volume1, rise1) = slopes(substance, reference, t, p);
-        let (volume2, rise2) = slopes(substance, reference, t + 0.5 * step * rise1, p + 0.5 * step);
-        let (volume3, rise3) = slopes(substance, reference, t + 0.5 * step * rise2, p + 0.5 * step);
-        let (volume4, rise4) = slopes(substance, reference, t + step * rise3, p + step);
+        let (volume1, rise1) = slopes(substance, reference, heat, t, p);
+        let (volume2, rise2) = slopes(substance, reference, heat, t + 0.5 * step * rise1, p + 0.5 * step);
+        let (volume3, rise3) = slopes(substance, reference, heat, t + 0.5 * step * rise2, p + 0.5 * step);
+        let (volume4, rise4) = slopes(substance, reference, heat, t + step * rise3, p + step);
         t += step / 6.0 * (rise1 + 2.0 * (rise2 + rise3) + rise4);
         head -= step / 6.0 * (volume1 + 2.0 * (volume2 + volume3) + volume4);
         p += step;
@@ -87,11 +98,20 @@ fn expand(
     Ok((Place { pressure, temperature: t, state: substance.state(t, pressure, reference) }, head))
 }
 
-/// (1/rho, dT/dp at constant entropy) at a state, by differences of the enthalpy and density themselves.
-fn slopes(substance: &Substance<'_>, reference: &Reference, temperature: f64, pressure: f64) -> (f64, f64) {
+/// (1/rho, dT/dp along the entrance) at a state, by differences of the enthalpy and density themselves.
+fn slopes(
+    substance: &Substance<'_>,
+    reference: &Reference,
+    heat: Entrance,
+    temperature: f64,
+    pressure: f64,
+) -> (f64, f64) {
     let (dt, dp) = (0.05, 1e-4 * pressure);
     let enthalpy = |t: f64, p: f64| substance.state(t, p, reference).enthalpy;
     let volume = 1.0 / substance.density(temperature, pressure);
+    if heat == Entrance::Isothermal {
+        return (volume, 0.0);
+    }
     let capacity = (enthalpy(temperature + dt, pressure) - enthalpy(temperature - dt, pressure)) / (2.0 * dt);
     let lift = (enthalpy(temperature, pressure + dp) - enthalpy(temperature, pressure - dp)) / (2.0 * dp);
     // dh = cp dT + (dh/dp) dp = dp/rho along the isentrope.

@@ -13,7 +13,7 @@
 
 use super::differences::{derivative, extrapolation, positions};
 use super::grid::Grid;
-use super::inlet::{Place, enter};
+use super::inlet::{Entrance, Place, enter};
 use super::profile::{Carried, Profile};
 use super::refused::Refused;
 use super::section::Section;
@@ -133,7 +133,9 @@ impl Channel<'_> {
         let flux = mass_flow / self.section.area();
         let scales =
             Scales { flux, density: state.density, speed: flux / state.density, pressure: self.pressure, reference };
-        let entered = enter(&self.substance, &reference, &plenum, flux)?;
+        let heat =
+            if self.wall == Wall::UnlimitedCapacity { Entrance::Isothermal } else { Entrance::Isentropic };
+        let entered = enter(&self.substance, &reference, &plenum, flux, heat)?;
         let loss = entered.fall / (scales.density * scales.speed * scales.speed);
         let first = Profile::uniform(grid.len(), loss, entered.velocity / scales.speed, &entered.place);
         let entry = self.section.hydraulic_diameter().powi(2) * flux / state.viscosity; // Dh Re
@@ -161,7 +163,10 @@ impl Channel<'_> {
         for &z in along.iter().skip(1) {
             let places: Vec<f64> = past.iter().map(|(profile, _)| profile.position).collect();
             let history = Past::new(&derivative(z, &places), &past);
-            let guess = predict(z, &places, &past);
+            let mut guess = predict(z, &places, &past);
+            if self.wall == Wall::UnlimitedCapacity {
+                guess.temperature.copy_from(&past[0].0.temperature); // nothing would correct what a guess adds
+            }
             let step = Step { channel: self, scales, grid, past: &history };
             let profile = step.solve(guess)?;
             let carried = profile.carried(scales.density, scales.speed);

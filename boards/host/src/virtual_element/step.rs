@@ -7,9 +7,10 @@ use super::refused::Refused;
 use super::substance::State;
 use nalgebra::{DMatrix, DVector};
 
-/// Rounds of a step, and the relative change at which it ends.
+/// Rounds of a step.
 const ROUNDS: usize = 40;
-const SETTLED: f64 = 1e-9;
+/// Relative change after which no further round is needed: the next would be a hundred times smaller.
+const SETTLED: f64 = 1e-7;
 /// Slip and jump lengths never below this share of the hydraulic diameter: a wall without slip.
 const NO_SLIP: f64 = 1e-9;
 

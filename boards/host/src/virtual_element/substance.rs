@@ -16,7 +16,7 @@ pub(crate) const VELOCITY_SLIP: f64 = 1.016;
 /// Temperature jump of a monatomic gas at such walls (Sharipov 2004, from memory); used for every gas.
 const TEMPERATURE_JUMP: f64 = 1.95;
 /// Kelvin by which the table is differentiated.
-const STEP: f64 = 0.25;
+const STEP: f64 = 4.0;
 
 /// A fluid with all that momentum and energy need.
 #[derive(Debug, Clone, Copy)]
@@ -46,13 +46,16 @@ pub(crate) struct State {
     pub capacity: f64,
 }
 
-/// About which a liquid's enthalpy is expanded.
+/// About which enthalpy is expanded.
 #[derive(Debug, Clone, Copy)]
 pub(crate) struct Reference {
     temperature: f64,
     pressure: f64,
+    /// The table a step colder, at the reference, a step warmer.
+    tables: [Properties; 3],
+    /// Of a liquid.
     heat: LiquidHeat,
-    /// (1 - beta T)/rho, m3/kg.
+    /// (1 - beta T)/rho of a liquid, m3/kg.
     lift: f64,
 }
 
@@ -106,18 +109,18 @@ impl<'a> Substance<'a> {
         temperature.clamp(low, high)
     }
 
-    /// The reference about which a liquid's enthalpy is expanded (K, Pa).
+    /// The reference about which enthalpy is expanded (K, Pa).
     pub(crate) fn reference(&self, temperature: f64, pressure: f64) -> Reference {
-        let density = |t: f64| Properties::at(self.fluid, t).density(pressure);
-        let rho = density(temperature);
-        let beta = -(density(temperature + STEP) / density(temperature - STEP)).ln() / (2.0 * STEP);
+        let tables = [-STEP, 0.0, STEP].map(|d| Properties::at(self.fluid, temperature + d));
+        let [cold, rho, warm] = tables.map(|table| table.density(pressure));
+        let beta = (cold / warm).ln() / (2.0 * STEP);
         let heat = match self.heat {
             Heat::Liquid(Some(stated)) => stated,
             _ if self.name() == "water" => LiquidHeat::water(temperature),
             _ if rho > 980.0 => LiquidHeat::WATER_GLYCOL,
             _ => LiquidHeat::mineral_oil(temperature, rho),
         };
-        Reference { temperature, pressure, heat, lift: (1.0 - beta * temperature) / rho }
+        Reference { temperature, pressure, tables, heat, lift: (1.0 - beta * temperature) / rho }
     }
 
     /// Density, kg/m3, at K and Pa.
@@ -134,7 +137,7 @@ impl<'a> Substance<'a> {
                 let r = self.specific_gas_constant();
                 let rise = 1.0 + here.viscosity_exponent() / 3.0;
                 let conductivity = rise * here.viscosity(0.0) * r / here.conduction_group();
-                let enthalpy = r * (gas.enthalpy(temperature) - self.departure(temperature, pressure));
+                let enthalpy = r * (gas.enthalpy(temperature) - self.departure(temperature, pressure, reference));
                 (enthalpy, r * gas.capacity(temperature), conductivity)
             }
             Heat::Liquid(_) => {
@@ -146,13 +149,18 @@ impl<'a> Substance<'a> {
         State { density, viscosity, conductivity, enthalpy, capacity }
     }
 
-    /// `T^2 int_0^p (dZ/dT) dp/p`, K: two Gauss points are exact for the table's cubic Z.
-    fn departure(&self, temperature: f64, pressure: f64) -> f64 {
-        let [cold, warm] = [temperature - STEP, temperature + STEP].map(|t| (t, Properties::at(self.fluid, t)));
+    /// `T^2 int_0^p (dZ/dT) dp/p`, K: two Gauss points are exact for the table's cubic Z, and dZ/dT is that of the
+    /// parabola through the reference's three temperatures.
+    fn departure(&self, temperature: f64, pressure: f64, reference: &Reference) -> f64 {
         let r = self.specific_gas_constant();
-        let z = |(t, at): (f64, Properties), p: f64| p / (r * t * at.density(p));
+        let away = temperature - reference.temperature;
         let offset = 0.5 / 3f64.sqrt();
-        let slope = |share: f64| (z(warm, share * pressure) - z(cold, share * pressure)) / (2.0 * STEP * share);
+        let slope = |share: f64| {
+            let p = share * pressure;
+            let z = |k: usize, step: f64| p / (r * (reference.temperature + step) * reference.tables[k].density(p));
+            let [cold, here, warm] = [z(0, -STEP), z(1, 0.0), z(2, STEP)];
+            ((warm - cold) / (2.0 * STEP) + away * (warm - 2.0 * here + cold) / (STEP * STEP)) / share
+        };
         temperature * temperature * 0.5 * (slope(0.5 - offset) + slope(0.5 + offset))
     }
 
