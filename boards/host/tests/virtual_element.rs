@@ -4,7 +4,9 @@ use evenbore::fluid::StoredFluid;
 use evenbore::fluid::builder::{Frame, gas, liquid};
 use evenbore::fluid::catalogue::{CARBON_DIOXIDE, HELIUM, NITROGEN, WATER};
 use evenbore::quantity::{AbsolutePressure, Temperature};
-use evenbore_bench::virtual_element::{Refused, Resolution, Section, Spread, Substance, Upstream, VirtualElement, Wall};
+use evenbore_bench::virtual_element::{
+    Refused, Resolution, Section, Spread, Substance, Upstream, VirtualElement, Wall,
+};
 
 const TUBE: Section = Section::RoundTube { bore: 1e-3 };
 const SLOT: Section = Section::ParallelPlates { gap: 0.5e-3, width: 0.1 };
@@ -43,7 +45,8 @@ fn lost(section: Section, reynolds: f64, x_plus: f64) -> f64 {
     let fluid = constant_liquid();
     let across = section.hydraulic_diameter();
     let velocity = reynolds * MU / (RHO * across);
-    let element = VirtualElement::new(section, 1, x_plus * reynolds * across).unwrap().with_wall(Wall::UnlimitedCapacity);
+    let element =
+        VirtualElement::new(section, 1, x_plus * reynolds * across).unwrap().with_wall(Wall::UnlimitedCapacity);
     let flow = RHO * velocity * section.area();
     let outcome = element.pressure_drop(&Substance::new(&fluid), &Upstream::at(1e7, T), flow).unwrap();
     outcome.pressure_drop / (0.5 * RHO * velocity * velocity) - 1.0
@@ -81,7 +84,10 @@ fn apparent_friction_follows_the_correlation_of_shah() {
             let start = 3.44 / f64::sqrt(x);
             let expected = start + (friction + excess / (4.0 * x) - start) / (1.0 + constant / (x * x));
             let got = lost(section, 2000.0, x) / (4.0 * x);
-            println!("{section:?} x+ {x:e}: f Re {got:.3}, correlation {expected:.3}, {:+.2} %", (got / expected - 1.0) * 100.0);
+            println!(
+                "{section:?} x+ {x:e}: f Re {got:.3}, correlation {expected:.3}, {:+.2} %",
+                (got / expected - 1.0) * 100.0
+            );
             assert!((got / expected - 1.0).abs() < 0.024, "{section:?} x+ {x}: {got} against {expected}");
         }
     }
@@ -104,7 +110,9 @@ fn isothermal_gas_with_slip_obeys_the_exact_formula() {
     let narrow = [Section::RoundTube { bore: 10e-6 }, Section::ParallelPlates { gap: 8e-6, width: 0.01 }];
     for section in narrow {
         for (p1, p2) in [(1e5, 99e3), (1e5, 45e3), (2e4, 1.5e4)] {
+            let finely = Resolution { longest_step: 0.004, ..Resolution::FINE };
             let element = VirtualElement::new(section, 1, 0.2).unwrap().with_wall(Wall::UnlimitedCapacity);
+            let element = element.with_resolution(finely).unwrap();
             let outcome = element.flow(&Substance::new(&fluid), &Upstream::at(p1, T), p1 - p2).unwrap();
             let error = outcome.mass_flow / exact_isothermal(section, 0.2, p1, p2) - 1.0;
             println!("{section:?} {p1} to {p2} Pa: {error:e}");
@@ -232,11 +240,7 @@ fn nothing_of_the_law_is_used() {
     let mut files = vec![std::path::PathBuf::from(format!("{folder}.rs"))];
     files.extend(std::fs::read_dir(folder).unwrap().map(|entry| entry.unwrap().path()));
     assert!(files.len() > 10);
-    let used = [
-        "double::Properties",
-        "fluid::{Phase, StoredFluid}",
-        "fluid::catalogue",
-    ];
+    let used = ["double::Properties", "fluid::{Phase, StoredFluid}", "fluid::catalogue"];
     for file in files {
         let text = std::fs::read_to_string(&file).unwrap();
         for line in text.lines().filter(|line| line.contains("evenbore::")) {

@@ -28,7 +28,7 @@ fn but(list: &[f64], j: usize) -> impl Iterator<Item = &f64> {
 /// Length before the outlet over which steps shorten, and their shortest, as shares of the length and the longest step:
 /// a gas accelerates towards the outlet.
 const APPROACH: f64 = 0.5;
-const SHORTEST: f64 = 0.05;
+const SHORTEST: f64 = 0.1;
 
 /// Positions from the inlet to `length`: the first step `first`, each next `growth` times longer, none above `longest`,
 /// shorter again towards the outlet.

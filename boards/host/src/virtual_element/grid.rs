@@ -100,9 +100,8 @@ fn integration(degree: usize, points: &[f64], weights: &DVector<f64>) -> DMatrix
     };
     // The weights of the integral over x are twice those over xi; the integral itself is halved back.
     let norm = |n: usize| if n == degree { 2.0 / degree as f64 } else { 2.0 / (2 * n + 1) as f64 };
-    let entry = |k: usize, l: usize| -> f64 {
-        (0..=degree).map(|n| weights[l] * table[l][n] / norm(n) * term(n, k)).sum()
-    };
+    let entry =
+        |k: usize, l: usize| -> f64 { (0..=degree).map(|n| weights[l] * table[l][n] / norm(n) * term(n, k)).sum() };
     DMatrix::from_fn(points.len(), points.len(), entry)
 }
 

@@ -41,7 +41,7 @@ pub struct Resolution {
 
 impl Resolution {
     /// Enough for 20 ppm of the flow (shown by `tests/virtual_element.rs`).
-    pub const FINE: Self = Self { degree: 24, first_step: 1e-7, growth: 1.1, longest_step: 1.0 / 20.0 };
+    pub const FINE: Self = Self { degree: 24, first_step: 1e-7, growth: 1.1, longest_step: 1.0 / 40.0 };
     /// A first approach.
     pub const COARSE: Self = Self { degree: 24, first_step: 1e-6, growth: 1.3, longest_step: 0.1 };
 
@@ -133,15 +133,14 @@ impl Channel<'_> {
         let flux = mass_flow / self.section.area();
         let scales =
             Scales { flux, density: state.density, speed: flux / state.density, pressure: self.pressure, reference };
-        let heat =
-            if self.wall == Wall::UnlimitedCapacity { Entrance::Isothermal } else { Entrance::Isentropic };
+        let heat = if self.wall == Wall::UnlimitedCapacity { Entrance::Isothermal } else { Entrance::Isentropic };
         let entered = enter(&self.substance, &reference, &plenum, flux, heat)?;
         let loss = entered.fall / (scales.density * scales.speed * scales.speed);
         let first = Profile::uniform(grid.len(), loss, entered.velocity / scales.speed, &entered.place);
         let entry = self.section.hydraulic_diameter().powi(2) * flux / state.viscosity; // Dh Re
         let along = positions(
             self.length,
-            (resolution.first_step * entry).min(1e-5 * self.length),
+            (resolution.first_step * entry).min(0.01 * self.length),
             resolution.growth,
             resolution.longest_step * self.length,
         );

@@ -40,7 +40,9 @@ pub enum Refused {
         limit: f64,
     },
     /// The fluid's table excludes the state: another phase may begin there.
-    #[error("{temperature:.2} K and {pressure:.0} Pa lie outside the table of {fluid} ({low:.2} to {high:.2} K, {bottom:.0} to {top:.0} Pa)")]
+    #[error(
+        "{temperature:.2} K and {pressure:.0} Pa lie outside the table of {fluid} ({low:.2} to {high:.2} K, {bottom:.0} to {top:.0} Pa)"
+    )]
     OutsideTable {
         /// Name of the fluid.
         fluid: String,

@@ -41,11 +41,18 @@ pub(crate) fn flow(channel: &Channel<'_>, drop: f64, fine: &Resolution) -> Resul
     let (near, slope) = approach.unwrap_or((start, 1.0));
     let grid = Grid::new(fine.degree);
     let mut last = None;
-    let (mass_flow, _) = secant(near, slope, drop, SETTLED, |m| {
-        let stations = channel.march(m, &grid, fine)?;
-        last = Some(stations.clone());
-        Ok(stations)
-    }, channel)?;
+    let (mass_flow, _) = secant(
+        near,
+        slope,
+        drop,
+        SETTLED,
+        |m| {
+            let stations = channel.march(m, &grid, fine)?;
+            last = Some(stations.clone());
+            Ok(stations)
+        },
+        channel,
+    )?;
     let stations = last.unwrap_or_default();
     Ok(Found { mass_flow, stations })
 }

@@ -51,9 +51,7 @@ impl Section {
     pub fn stretched(&self, stretch: f64) -> Self {
         match *self {
             Self::RoundTube { bore } => Self::RoundTube { bore: bore * stretch },
-            Self::ParallelPlates { gap, width } => {
-                Self::ParallelPlates { gap: gap * stretch, width: width * stretch }
-            }
+            Self::ParallelPlates { gap, width } => Self::ParallelPlates { gap: gap * stretch, width: width * stretch },
         }
     }
 

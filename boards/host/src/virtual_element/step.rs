@@ -29,8 +29,7 @@ impl Past {
     pub fn new(weights: &[f64], past: &[(Profile, Carried)]) -> Self {
         let n = past[0].1.mass.len();
         let zero = DVector::zeros(n);
-        let mut sum =
-            Self { lead: weights[0], mass: zero.clone(), momentum: zero.clone(), energy: zero, loss: 0.0 };
+        let mut sum = Self { lead: weights[0], mass: zero.clone(), momentum: zero.clone(), energy: zero, loss: 0.0 };
         for (&weight, (profile, carried)) in weights[1..].iter().zip(past) {
             sum.mass.axpy(weight, &carried.mass, 1.0);
             sum.momentum.axpy(weight, &carried.momentum, 1.0);
@@ -151,10 +150,7 @@ impl Step<'_> {
         }
         jacobian[(n - 1, n - 1)] += friction;
         jacobian[(n, n)] = softness * grid.weight.dot(&mass);
-        let right = DVector::from_iterator(
-            n + 1,
-            residual.iter().map(|r| -r).chain([1.0 - grid.weight.dot(&mass)]),
-        );
+        let right = DVector::from_iterator(n + 1, residual.iter().map(|r| -r).chain([1.0 - grid.weight.dot(&mass)]));
         let step = solve(jacobian, right)?;
         profile.velocity += step.rows(0, n);
         profile.loss += step[n];
@@ -175,8 +171,7 @@ impl Step<'_> {
         let work = (&grid.derivative * u).component_mul(u).component_mul(&viscous);
         let heat = (&grid.derivative * &profile.temperature).component_mul(&conducting);
         let flux = work + heat - crossing.component_mul(&total);
-        let mut residual =
-            &grid.weak * flux + (&carried.energy * lead + &self.past.energy).component_mul(&grid.weight);
+        let mut residual = &grid.weak * flux + (&carried.energy * lead + &self.past.energy).component_mul(&grid.weight);
         let capacity = profile.property(|state| state.capacity);
         let mut inside = scaled_rows(&grid.derivative, &conducting);
         for i in 0..n {
