@@ -32,6 +32,10 @@ impl Properties {
     pub fn viscosity_exponent(&self) -> f64 {
         self.at.exponent()
     }
+    /// Conduction group of a gas, `G = (1 + n/3) mu R/(M k)` with its conductivity k; 0 for a liquid.
+    pub fn conduction_group(&self) -> f64 {
+        self.at.conduction
+    }
 }
 
 /// The law at one temperature and line pressure, in double precision.

@@ -12,6 +12,8 @@ pub mod statistics; // fits, distributions, covariances
 
 pub mod resources; // elements and fluids from their files
 
+pub mod virtual_element; // an element computed along its channels, without the law
+
 pub mod calibrate; // points into coefficients, findings and a verdict
 
 pub mod record_file; // the record as text and bytes
