@@ -77,7 +77,7 @@ impl Conditions {
         let mu = law.fluid.viscosity(p1);
         let need = law.a * x * (1.0 + law.b_over_a * x) * mu / self.state.line_density * mu;
         let inside = p1 * (p1 - gas * 2.0 * need);
-        if !(inside > 0.0) {
+        if inside <= 0.0 || !inside.is_finite() {
             return most;
         }
         let drop = if gas > 0.0 { 2.0 * need * p1 / (p1 + inside.root()) } else { need };
