@@ -10,7 +10,7 @@
 //! flow follows the pressure, `R sqrt(omega/nu) < 1` (Womersley, 1955). Therefore everything here that averages takes a
 //! [`Linear`] quantity, which a pressure drop is not.
 
-use crate::quantity::{AbsolutePressure, MassFlow, Quantity, RelativeHumidity, Temperature, VolumeFlow};
+pub mod linear; // what may be averaged
 
 pub mod damping; // first-order lag, exact for uneven samples
 
@@ -26,19 +26,6 @@ pub mod freshness; // age of samples, skew between sensors
 
 pub use cutoff::Cutoff;
 pub use damping::Damping;
+pub use linear::Linear;
 pub use window::Window;
 pub use zero::{Zero, ZeroCapture};
-
-/// A quantity whose mean is meaningful: a flow, a temperature, a line pressure, a humidity; not a pressure drop.
-///
-/// ```compile_fail
-/// use evenbore::{conditioning::Damping, quantity::PressureDrop};
-/// let _ = Damping::<PressureDrop>::new(1.0); // compensate first, then average
-/// ```
-pub trait Linear: Quantity {}
-
-impl Linear for VolumeFlow {}
-impl Linear for MassFlow {}
-impl Linear for Temperature {}
-impl Linear for AbsolutePressure {}
-impl Linear for RelativeHumidity {}

@@ -231,7 +231,8 @@ fn only_one_file_names_the_mathematics_it_borrows() {
 fn nothing_in_the_library_can_panic_by_its_own_words() {
     let words = [".unwrap()", ".expect(", "panic!", "unreachable!", "todo!", "unimplemented!", "assert!", "assert_eq!"];
     for file in library() {
-        let code = code(&file.text);
+        // What is asserted while compiling cannot fail afterwards.
+        let code = code(&file.text).replace("const { assert!(", "");
         for word in words {
             assert!(!code.contains(word), "{} says {word}", file.disk.display());
         }

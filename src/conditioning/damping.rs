@@ -1,6 +1,6 @@
 //! Damping: a first-order lag with its time constant in seconds.
 
-use super::Linear;
+use super::linear::Linear;
 use crate::error::{Error, within};
 use crate::math::approached;
 use core::marker::PhantomData;

@@ -1,6 +1,6 @@
 //! Windows: median, mean and scatter of the last samples.
 
-use super::Linear;
+use super::linear::Linear;
 use super::samples::Samples;
 use core::marker::PhantomData;
 

@@ -12,7 +12,7 @@
 //! A counter is its rollovers (u32), its whole sub-units (u64) and its fraction in 2^-64 sub-units (u64).
 
 use super::counter::{Counter, ROLLOVER};
-use super::{Total, Totals};
+use super::running::{Total, Totals};
 use crate::error::Error;
 use crate::record::checksum;
 

@@ -30,9 +30,9 @@ mod inlet; // plenum to uniform profile
 
 mod profile; // what is carried along the channel
 
-pub mod march; // one channel, inlet to outlet
-
 mod step; // one position of the march
+
+pub mod march; // one channel, inlet to outlet
 
 mod search; // the flow for a pressure drop
 

@@ -2,6 +2,7 @@
 
 use super::{Ended, SensorOptions, json, print, reference_conditions};
 use clap::Args;
+use evenbore::flow_curve::Arithmetic;
 use evenbore::reading::SensorUncertainty;
 use evenbore::record::REASON_LENGTH;
 use evenbore::reference::ReferenceConditions;
@@ -45,6 +46,9 @@ pub struct Arguments {
     /// Date of the calibration, YYYY-MM-DD; today if not given
     #[arg(long, value_name = "DATE", value_parser = date)]
     date: Option<jiff::civil::Date>,
+    /// Arithmetic of the instrument: single (the law per sample) or curve (a curve per temperature and line pressure)
+    #[arg(long, value_name = "NAME", default_value = "single", value_parser = arithmetic)]
+    arithmetic: Arithmetic,
     /// Conditions at which the instrument quotes standard flow
     #[arg(long, value_name = "T,P", default_value = "0C,101.325kPa", value_parser = reference_conditions)]
     reference_conditions: ReferenceConditions,
@@ -53,6 +57,14 @@ pub struct Arguments {
     json: bool,
     #[command(flatten)]
     sensors: SensorOptions,
+}
+
+fn arithmetic(text: &str) -> Result<Arithmetic, String> {
+    match text {
+        "single" => Ok(Arithmetic::Single),
+        "curve" => Ok(Arithmetic::Curve),
+        _ => Err("single and curve are known".into()),
+    }
 }
 
 fn reason(text: &str) -> Result<String, String> {
@@ -75,9 +87,12 @@ pub fn run(arguments: &Arguments) -> Result<Ended, Problem> {
     check_lines(arguments, &points)?;
     let order = order(arguments, &file, element, &fluids, &points)?;
     let mut verdict = calibrate(&points, &order)?;
-    if let (Some(record), false) = (&mut verdict.record, verdict.calibration.accepted) {
-        let reason = arguments.accept_anyway.as_deref().unwrap_or_default();
-        record.reason = reason.try_into().unwrap_or_default();
+    if let Some(record) = &mut verdict.record {
+        record.arithmetic = arguments.arithmetic;
+        if !verdict.calibration.accepted {
+            let reason = arguments.accept_anyway.as_deref().unwrap_or_default();
+            record.reason = reason.try_into().unwrap_or_default();
+        }
     }
     write_results(arguments, &file, &verdict)?;
     if arguments.json {

@@ -66,7 +66,7 @@ pub(crate) fn enter(
             return Ok(Entered { place, velocity, fall });
         }
         fall += (wanted - head) * place.state.density;
-        if !(fall < DEEPEST * plenum.pressure) {
+        if fall.is_nan() || fall >= DEEPEST * plenum.pressure {
             return Err(Refused::Vacuum { pressure: plenum.pressure - fall, position: 0.0 });
         }
         (place, head) = expand(substance, reference, plenum, fall, heat)?;

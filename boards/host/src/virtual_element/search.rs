@@ -103,10 +103,10 @@ fn secant(
             return Ok((flow, slope));
         }
         let x = flow.ln();
-        if let Some((x0, miss0)) = last {
-            if (x - x0).abs() > 1e-9 {
-                slope = ((miss - miss0) / (x - x0)).clamp(0.3, 50.0);
-            }
+        if let Some((x0, miss0)) = last
+            && (x - x0).abs() > 1e-9
+        {
+            slope = ((miss - miss0) / (x - x0)).clamp(0.3, 50.0);
         }
         last = Some((x, miss));
         flow = (x - miss / slope).exp();

@@ -80,7 +80,7 @@ impl Step<'_> {
     fn refresh(&self, profile: &mut Profile) -> Result<(), Refused> {
         let pressure = self.scales.pressure_at(profile.loss);
         let position = profile.position / self.channel.length;
-        if !(pressure > 0.0) {
+        if pressure.is_nan() || pressure <= 0.0 {
             return Err(Refused::Vacuum { pressure, position });
         }
         let substance = &self.channel.substance;
