@@ -4,6 +4,10 @@
 
 // In the order in which a file becomes a certificate; a file imports only from files above it (tests/layers.rs).
 
+pub mod random; // seeded, the same everywhere
+
+pub mod parallel; // independent work on all processors
+
 pub mod input; // files and command-line values into SI
 
 pub mod output; // whole files or none
@@ -15,6 +19,8 @@ pub mod resources; // elements and fluids from their files
 pub mod virtual_element; // an element computed along its channels, without the law
 
 pub mod calibrate; // points into coefficients, findings and a verdict
+
+pub mod proof; // the claims of the README, measured
 
 pub mod record_file; // the record as text and bytes
 
