@@ -44,6 +44,7 @@ const SHORTEST_EXPONENT: i32 = 8;
 ///
 /// # Errors
 /// Refuses what [`Conditions::sample`] refuses.
+#[inline(never)] // a curve's stack stays out of the walk that needs none
 pub(crate) fn by_curve(conditions: &Conditions, exact: Sample, drop: PressureDrop) -> Result<Sample, Refusal> {
     let Ok(curve) = FlowCurve::of(conditions) else { return Ok(exact) };
     let Quick { volume, status } = curve.sample(drop)?;
@@ -73,16 +74,19 @@ pub struct FlowCurve {
     reciprocal: u32,
     /// Stored exponent of the curve's end.
     end_exponent: u32,
-    /// Exponent of the power of two that g is divided by.
-    unit_exponent: i32,
-    /// Pressure drops that the curve serves.
+    /// What a pressure drop's stored exponent lacks of the exponent of its flow.
+    flow_exponent: u32,
+    /// Pressure drops that the curve serves: the smallest, and how far the largest lies above it.
     least: u32,
-    most: u32,
+    reach: u32,
     /// Flows and pressure drops above which a flag is raised.
     laminar: u32,
     range: u32,
     expansion: u32,
     slip: u32,
+    /// The lowest flow and the lowest pressure drop among them.
+    quiet_flow: u32,
+    quiet_drop: u32,
     standing: Status,
 }
 
@@ -101,11 +105,9 @@ const fn upper_signed(a: i32, b: i32) -> i32 {
     ((a as i64 * b as i64) >> 32) as i32
 }
 
-/// Bits of `product 2^(exponent - 156)`, rounded to nearest; the caller sees to it that the result is normal.
-const fn assemble(exponent: i32, product: u32) -> u32 {
-    let zeros = product.leading_zeros();
-    let mantissa = ((product << zeros) >> 7).wrapping_add(1) >> 1; // 24 bits, or 2^24 after rounding up
-    ((exponent + 2 - zeros as i32) as u32).wrapping_shl(23).wrapping_add(mantissa).wrapping_sub(1 << 23)
+/// Bits of `product 2^exponent`, rounded to nearest; the caller sees to it that the result is normal.
+const fn assemble(exponent: u32, product: u32) -> u32 {
+    (product as f32).to_bits().wrapping_add(exponent.wrapping_shl(23))
 }
 
 /// 2 to an exponent, if that is a normal number.
@@ -145,7 +147,7 @@ fn polynomial(values: [f32; TERMS]) -> [f32; TERMS] {
         }
     }
     let mut rising = [0.0; TERMS];
-    for (difference, node) in differences.iter().zip(NODES).rev() {
+    for (difference, node) in differences.iter().rev().zip(NODES.iter().rev()) {
         // rising = rising (t - node) + difference
         let mut carried = *difference;
         for place in &mut rising {
@@ -196,20 +198,25 @@ impl FlowCurve {
         }
         let (end_exponent, mantissa) = parts(drop.to_bits());
         let limits = conditions.limits();
+        let [laminar, range, expansion, slip] =
+            [limits.laminar, limits.range, limits.expansion, limits.slip].map(f32::to_bits);
+        // Below this a flow would be too small for a normal number.
+        let least = (SHORTEST_EXPONENT - unit_exponent).max(1) as u32 * (1 << 23);
         Ok(Self {
             conditions: *conditions,
             octaves,
             lowest: segment(conditions, 0.0, top, unit)?,
             reciprocal: ((1_u64 << 63) / u64::from(mantissa)).min(u64::from(u32::MAX)) as u32,
             end_exponent,
-            unit_exponent,
-            // Below this a flow would be too small for a normal number.
-            least: (SHORTEST_EXPONENT - unit_exponent).max(1) as u32 * (1 << 23),
-            most: drop.to_bits(),
-            laminar: limits.laminar.to_bits(),
-            range: limits.range.to_bits(),
-            expansion: limits.expansion.to_bits(),
-            slip: limits.slip.to_bits(),
+            flow_exponent: (unit_exponent - 156) as u32,
+            least,
+            reach: drop.to_bits().saturating_sub(least),
+            laminar,
+            range,
+            expansion,
+            slip,
+            quiet_flow: laminar.min(range),
+            quiet_drop: expansion.min(slip),
             standing: limits.standing,
         })
     }
@@ -232,19 +239,28 @@ impl FlowCurve {
     ///
     /// # Errors
     /// Refuses what [`Conditions::sample`] refuses.
+    #[inline]
     pub fn sample(&self, pressure_drop: PressureDrop) -> Result<Quick, Refusal> {
         let bits = pressure_drop.as_pascals().to_bits();
-        // Positive numbers compare as their bits; negative ones and NaN come out above every end.
-        if bits > self.most || bits < self.least {
+        // Positive numbers compare as their bits; negative ones and NaN come out beyond every end.
+        if bits.wrapping_sub(self.least) > self.reach {
             return self.exact(pressure_drop);
         }
         let flow = self.evaluate(bits);
+        let quiet = flow <= self.quiet_flow && bits <= self.quiet_drop;
+        let status = if quiet { self.standing } else { self.flags(bits, flow) };
+        Ok(Quick { volume: VolumeFlow::from_cubic_metres_per_second(f32::from_bits(flow)), status })
+    }
+
+    /// The flags of a pressure drop and a flow.
+    #[cold]
+    fn flags(&self, drop: u32, flow: u32) -> Status {
         let mut status = self.standing;
         status.set(Status::NOT_LAMINAR, flow > self.laminar);
         status.set(Status::BEYOND_CALIBRATION, flow > self.range);
-        status.set(Status::STRONG_EXPANSION, bits > self.expansion);
-        status.set(Status::STRONG_SLIP, bits > self.slip);
-        Ok(Quick { volume: VolumeFlow::from_cubic_metres_per_second(f32::from_bits(flow)), status })
+        status.set(Status::STRONG_EXPANSION, drop > self.expansion);
+        status.set(Status::STRONG_SLIP, drop > self.slip);
+        status
     }
 
     /// Mass flow, and dry flow at the reference conditions, of a volume flow of this curve.
@@ -253,6 +269,7 @@ impl FlowCurve {
     }
 
     /// Bits of the volume flow at the bits of a pressure drop within the curve.
+    #[inline]
     fn evaluate(&self, bits: u32) -> u32 {
         let (exponent, mantissa) = parts(bits);
         // Drop over end is `ratio 2^-31` shifted down by the exponents' difference; its octave and the place in it.
@@ -274,10 +291,12 @@ impl FlowCurve {
         let g = upper_signed(g, t).wrapping_add(*c2);
         let g = upper_signed(g, t).wrapping_add(*c1);
         let g = upper_signed(g, t).wrapping_add(*c0);
-        assemble(exponent as i32 + self.unit_exponent, upper(mantissa, g as u32))
+        assemble(exponent.wrapping_add(self.flow_exponent), upper(mantissa, g as u32))
     }
 
     /// By the law itself, off the curve.
+    #[cold]
+    #[inline(never)]
     fn exact(&self, pressure_drop: PressureDrop) -> Result<Quick, Refusal> {
         let Sample { volume, status, .. } = self.conditions.sample(pressure_drop)?;
         Ok(Quick { volume, status })

@@ -114,7 +114,7 @@ fn converged(element: &Element, conditions: &double::Conditions, drop: f64, star
 }
 
 #[test]
-fn two_steps_on_q_suffice() {
+fn newtons_steps_suffice() {
     let mut errors = Errors::default();
     let mut check = |name: &str, element: &Element, fluid: &StoredFluid, t: f64, p: f64| {
         let conditions = double::Conditions::new(element, fluid, t, p, None).unwrap();
@@ -128,7 +128,7 @@ fn two_steps_on_q_suffice() {
     // The case named in the law: carbon dioxide near Re 1750 in the tubes of L/D 50.
     let (name, short) = elements()[3];
     check(name, &short, CARBON_DIOXIDE.fluid(), 293.15, 1.2e5);
-    errors.judge("two steps on q", tolerance::Q_UPDATES);
+    errors.judge("Newton's steps", tolerance::Q_UPDATES);
 }
 
 #[test]

@@ -39,8 +39,8 @@ pub const QUICK_ROOT: f64 = 2e-6;
 /// Measured: 1.64e-6.
 pub const LOG_RATIO: f64 = 2e-6;
 
-/// Two Newton steps on q against the converged flow, relative. Measured: 1.8e-7.
-pub const Q_UPDATES: f64 = 2e-7;
+/// Newton's two or three steps on x against the converged flow, relative. Measured: 5.7e-9.
+pub const Q_UPDATES: f64 = 1e-8;
 
 /// Oil tables against Walther's line, relative. Measured: 1.13e-6; 20 ppm are stated for tables of users' own.
 pub const OIL_TABLE: f64 = 1.5e-6;

@@ -2,9 +2,10 @@
 
 use crate::baseline::Simple;
 use core::mem::MaybeUninit;
-use evenbore::error::Error;
 use evenbore::conditions::{Conditions, Sample};
+use evenbore::error::Error;
 use evenbore::flow::Flow;
+use evenbore::flow_curve::{FlowCurve, Quick};
 use evenbore::record::RECORD_LENGTH;
 use evenbore::{Meter, Reading, Record, Refusal};
 
@@ -14,6 +15,8 @@ pub struct Bench<'a> {
     pub meter: &'a Meter<'a>,
     /// Conditions of the reading.
     pub conditions: &'a Conditions,
+    /// Their curve over pressure drop.
+    pub curve: &'a FlowCurve,
     /// The reading.
     pub reading: Reading,
     /// The hand-written model of the same element.
@@ -32,6 +35,16 @@ pub fn baseline(b: &Bench<'_>) -> MaybeUninit<[f32; 2]> {
 /// A pressure drop at conditions that are prepared.
 pub fn sample(b: &Bench<'_>) -> MaybeUninit<Result<Sample, Refusal>> {
     MaybeUninit::new(b.conditions.sample(b.reading.pressure_drop))
+}
+
+/// The same by the fast arithmetic.
+pub fn curve_sample(b: &Bench<'_>) -> MaybeUninit<Result<Quick, Refusal>> {
+    MaybeUninit::new(b.curve.sample(b.reading.pressure_drop))
+}
+
+/// The curve of conditions that are prepared.
+pub fn curve(b: &Bench<'_>) -> MaybeUninit<Result<FlowCurve, Refusal>> {
+    MaybeUninit::new(FlowCurve::of(b.conditions))
 }
 
 /// Conditions prepared anew, then a pressure drop.

@@ -3,6 +3,7 @@
 #![no_main]
 
 use evenbore::error::Error;
+use evenbore::flow_curve::FlowCurve;
 use evenbore::quantity::{AbsolutePressure, PressureDrop, Temperature};
 use evenbore::record::RECORD_LENGTH;
 use evenbore::{Reading, Refusal};
@@ -69,23 +70,39 @@ fn measure() -> Result<(), Failure> {
     let simple =
         Simple { a: element.a(), b: element.b(), mu: 1.79e-5, exponent: 0.69, gas_constant: 8.314_463 / 0.028_013_4 };
     let mut seed = readings::Seed::new(1);
-    let [mut baseline, mut sample, mut full, mut flow] = [const { Total { sum: 0, worst: 0, stack: 0 } }; 4];
+    let [mut baseline, mut curve_sample, mut sample, mut full, mut flow] =
+        [const { Total { sum: 0, worst: 0, stack: 0 } }; 5];
     for _ in 0..READINGS {
         let reading = reading(&mut seed);
         let conditions = meter.conditions(reading.temperature, reading.line_pressure, None)?;
-        let input = Bench { meter: &meter, conditions: &conditions, reading, simple: &simple, record: &bytes };
+        let curve = FlowCurve::of(&conditions)?;
+        let input = Bench {
+            meter: &meter,
+            conditions: &conditions,
+            curve: &curve,
+            reading,
+            simple: &simple,
+            record: &bytes,
+        };
+        curve_sample.add(counter.cost(bench::curve_sample, &input));
         baseline.add(counter.cost(bench::baseline, &input));
         sample.add(counter.cost(bench::sample, &input));
         full.add(counter.cost(bench::full, &input));
         flow.add(counter.cost(bench::flow, &input));
     }
     baseline.print("baseline", READINGS);
+    curve_sample.print("curve-sample", READINGS);
     sample.print("sample", READINGS);
     full.print("full", READINGS);
     flow.print("flow", READINGS);
     let reading = reading(&mut seed);
     let conditions = meter.conditions(reading.temperature, reading.line_pressure, None)?;
-    let input = Bench { meter: &meter, conditions: &conditions, reading, simple: &simple, record: &bytes };
+    let curve = FlowCurve::of(&conditions)?;
+    let input =
+        Bench { meter: &meter, conditions: &conditions, curve: &curve, reading, simple: &simple, record: &bytes };
+    let mut preparation = Total::default();
+    preparation.add(counter.cost(bench::curve, &input));
+    preparation.print("curve", 1);
     let mut decode = Total::default();
     decode.add(counter.cost(bench::decode, &input));
     decode.print("decode", 1);
