@@ -40,7 +40,7 @@ enum Command {
     /// port marked upstream whichever way the flow goes), or line_gauge_pressure_<unit> with
     /// barometric_pressure_<unit>; relative_humidity_<unit> makes air moist, and its cell stays empty for other fluids.
     /// All columns are carried through. Added are volume_flow (at the line's temperature and pressure), mass_flow,
-    /// standard_flow (dry, at the reference conditions), reynolds, u_volume_flow_rel (standard, relative) and status:
+    /// standard_flow (dry, at the reference conditions), reynolds, u_volume_flow_rel, u_mass_flow_rel, u_standard_flow_rel (standard, relative), status:
     /// good, or what a flow is flagged with, or why there is none, in which case its cells are empty.
     #[command(after_long_help = "Example:\n  evenbore flow day.csv --record EB-0042/record.toml --out flows.csv")]
     Flow(flow::Arguments),
