@@ -14,7 +14,9 @@ mod machine;
 #[allow(dead_code)] // the machines use more of it
 mod readings;
 
-use machine::{Machine, blessing, folder, machines, requested};
+use evenbore::quantity::{AbsolutePressure, PressureDrop, Temperature};
+use evenbore::{Reading, Refusal};
+use machine::{Machine, blessing, decoded, folder, machines, requested};
 use std::collections::BTreeSet;
 use std::fs;
 
@@ -84,6 +86,33 @@ fn no_machine_can_panic() {
         let failure = machine.build(&["--bin", "counter_example", "--features", "counter-example"]).unwrap_err();
         let reason = "undefined symbol: a_panic_is_reachable";
         assert!(failure.contains(reason), "{}: another failure than expected:\n{failure}", machine.name);
+    }
+}
+
+/// What the program `log` says, in words, is what the desktop computes.
+#[test]
+fn every_machine_logs_a_flow_in_words() {
+    let record = readings::record().unwrap();
+    let meter = record.meter().unwrap();
+    let reading = Reading::new(
+        PressureDrop::from_pascals(1500.0),
+        Temperature::from_kelvin(296.55),
+        AbsolutePressure::from_pascals(1.2e5),
+    );
+    let flow = meter.flow(&reading).unwrap();
+    let expected = [
+        "info serial EB-0042, Single".to_owned(),
+        format!("info flow Flow {{ sample: Sample {{ volume: VolumeFlow({}),", flow.volume.as_cubic_metres_per_second()),
+        format!("warn no flow: Refusal({:b})", Refusal::NOT_FINITE.bits()),
+    ];
+    for machine in requested() {
+        let (image, frames) = machine.log();
+        let text = decoded(&image, &frames);
+        assert_eq!(text.lines().count(), expected.len(), "{}: {text}", machine.name);
+        for (line, expected) in text.lines().zip(&expected) {
+            assert!(line.starts_with(expected), "{}: {line}, expected {expected}", machine.name);
+        }
+        assert!(text.contains(&format!("uncertainty: Uncertainty {{ fit: {},", flow.uncertainty.fit)), "{text}");
     }
 }
 

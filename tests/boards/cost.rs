@@ -45,13 +45,15 @@ impl Costs {
     }
 
     /// What the budget limits, in the order of its file.
-    fn limited(&self) -> [(&'static str, u32); 9] {
+    fn limited(&self) -> [(&'static str, u32); 11] {
         [
+            ("curve-sample", self.worst("curve-sample")),
+            ("curve", self.worst("curve")),
             ("sample", self.worst("sample")),
             ("full", self.worst("full")),
             ("flow", self.worst("flow")),
             ("decode", self.worst("decode")),
-            ("stack", ["sample", "full", "flow"].map(|work| self.work[work].stack).into_iter().max().unwrap()),
+            ("stack", ["curve-sample", "sample", "full", "flow"].map(|work| self.work[work].stack).into_iter().max().unwrap()),
             ("decode-stack", self.work["decode"].stack),
             ("flash", self.core.flash),
             ("record-flash", self.record.flash),
@@ -116,10 +118,12 @@ instructions, not cycles. Flash is `.text` and `.rodata` over an image that does
 ";
 
 /// Rows of the table and the names `cost` prints.
-const WORK: [(&str, &str); 5] = [
+const WORK: [(&str, &str); 7] = [
     ("simple model by hand (`powf`, no checks)", "baseline"),
+    ("sample by a prepared curve", "curve-sample"),
     ("sample at prepared conditions", "sample"),
     ("conditions and sample", "full"),
     ("whole walk with uncertainty", "flow"),
+    ("a curve prepared", "curve"),
     ("record decoded and checked", "decode"),
 ];
