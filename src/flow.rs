@@ -43,6 +43,7 @@ const RATIO_SPAN: f32 = 50.0;
 /// # Ok::<(), Box<dyn core::error::Error>>(())
 /// ```
 #[derive(Debug, Clone)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct Meter<'a> {
     element: Element,
     channels: Channels<f32>,

@@ -64,6 +64,7 @@ pub struct Quick {
 
 /// A curve of volume flow over pressure drop, valid at one temperature, line pressure and humidity.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct FlowCurve {
     conditions: Conditions,
     /// g over its power of two, by falling power of the place in the segment.

@@ -31,6 +31,7 @@ const INVERSE_ROUNDS: usize = 32;
 
 /// What of the law the element alone decides.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub(crate) struct Channels<F> {
     /// A at the reference temperature, 1/m3.
     pub a: F,
@@ -87,6 +88,7 @@ impl<F: Real> Channels<F> {
 
 /// The law at one temperature, line pressure and fluid.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub(crate) struct Prepared<F> {
     /// Fluid properties at the element's temperature.
     pub fluid: PropertiesAt<F>,

@@ -20,6 +20,7 @@ const DENSITY_PER_PASCAL: f32 = 6.5e-10;
 
 /// What a data sheet says of an oil.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct OilData<'a> {
     /// Name, 1 to 24 printable ASCII characters.
     pub name: &'a str,

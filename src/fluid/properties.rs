@@ -10,6 +10,7 @@ pub(crate) const MOLAR_GAS_CONSTANT: f64 = 8.314_462_618_153_24;
 
 /// Properties at one temperature, of a dry or pure fluid.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub(crate) struct PropertiesAt<F> {
     /// Viscosity towards zero pressure, Pa s.
     pub mu0: F,

@@ -274,6 +274,7 @@ fn nodes_within(limits: &[Limit; 2], nodes: &[[f32; 2]]) -> Result<(), Error> {
 
 /// A fluid of the catalogue: its stored table and where its numbers come from.
 #[derive(Debug)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct CatalogueEntry {
     pub(crate) fluid: StoredFluid,
     pub(crate) viscosity_source: &'static str,
