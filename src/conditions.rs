@@ -133,9 +133,10 @@ impl Conditions {
         let moist = &self.state.moisture;
         let humidity = reading.relative_humidity.map_or(0.0, RelativeHumidity::as_fraction);
         let water_per_humidity = if humidity > 0.0 { moist.water / humidity } else { 0.0 };
+        let z = self.state.law.fluid.density_exponent(self.state.law.line_pressure);
         let with_density = |per_water: f32| Sensitivities {
             temperature: volume.temperature + self.state.law.fluid.expansion() + per_water * moist.water_by_temperature,
-            line_pressure: volume.line_pressure + self.state.law.compressible - per_water * moist.water,
+            line_pressure: volume.line_pressure + z - per_water * moist.water,
             relative_humidity: volume.relative_humidity + per_water * water_per_humidity,
             ..*volume
         };

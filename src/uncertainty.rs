@@ -1,17 +1,18 @@
 //! Standard uncertainty of a flow, in closed form, in three parts (JCGM 100:2008, section 5).
 //!
-//! With eps the kinetic share, D = 1 + 2 eps, gam = (1 + eps)/D and s' = s/(1 + s), the law differentiated gives
+//! With eps the kinetic share, D = 1 + 2 eps + eps dln q/dln x, gam = (1 + eps)/D and s' = s/(1 + s), the law differentiated gives
 //!
-//! - `dln Q/dln dP = gam (1 - dP/2pm) - eps Cexp/K1 |dP|/(p2 q D)`
+//! - `dln Q/dln dP = gam (1 - z dP/2pm) - eps dq/dl |dP|/(p2 q D)`
 //! - `dln Q/dT = (gam - 1) dln rho/dT - n/(T D) + (3 + 4 eps) alpha/D + s' (n + 1/2)/(T D)`
-//! - `dln Q/dln p1 = gam p1/pm - 1 - s' p1/(pm D) + eps Cexp/K1 |dP|/(p2 q D) - k1 p1/D` (gas)
+//! - `dln Q/dln p1 = z (gam p1/pm - 1) - s' p1/(pm D) + eps dq/dl |dP|/(p2 q D) - k1 p1/D` (gas)
 //! - `dln Q/dln mu = -1/D`, `dln Q/dln A = -1/D`, `dln Q/dB = -q x (1 + s)/(A (1 + alpha dT) D)`
 //! - moist air: `dln Q/dx_w = (gam - 1) dln rho/dx_w - dln mu/dx_w/D`, and at constant relative humidity x_w follows
 //!   temperature (6 % per kelvin) and the inverse of line pressure
 //!
-//! for the volume flow Q at line conditions. Against numerical derivatives: within 0.9 % of the largest of them, each
-//! taken per relative change, and temperature within 1.6 %, reached by carbon dioxide (asserted in
-//! `tests/accuracy_uncertainty.rs` up to a third of the line pressure lost; left out are q's answer to x and how Z and Cexp change with temperature).
+//! for the volume flow Q at line conditions, z = dln rho/dln p. Against numerical derivatives: within 0.25 % of the largest
+//! of them, each taken per relative change, and temperature within 1.6 %, reached by carbon dioxide (asserted in
+//! `tests/accuracy_uncertainty.rs` up to a third of the line pressure lost; left out is how Z and Cexp change with
+//! temperature).
 
 use crate::calibration::{Cause, Quality};
 use crate::element::law::Solution;
@@ -65,7 +66,7 @@ pub struct Sensitivities {
 pub(crate) fn sensitivities(state: &State<f32>, at: &Solution<f32>, drop: f32, humidity: f32) -> Sensitivities {
     let (law, fluid) = (&state.law, &state.law.fluid);
     let eps = at.kinetic_share;
-    let per_d = 1.0 / (1.0 + 2.0 * eps);
+    let per_d = 1.0 / (1.0 + 2.0 * eps - eps * at.fall / at.q);
     let gam = (1.0 + eps) * per_d;
     let slip = at.slip / (1.0 + at.slip) * per_d;
     let t = fluid.temperature;
@@ -73,19 +74,20 @@ pub(crate) fn sensitivities(state: &State<f32>, at: &Solution<f32>, drop: f32, h
     let per_mean = 1.0 / at.mean_pressure;
     let stretch = law.line_pressure * per_mean;
     let per_log = drop.magnitude() / (law.line_pressure - drop); // dl/dln|dP|
-    let expansion = eps * law.expansion_gain * per_log / at.q * per_d;
     let gas = law.compressible;
+    let expansion = gas * eps * law.q_by_log(at.x.magnitude()) * per_log / at.q * per_d;
+    let z = fluid.density_exponent(at.mean_pressure);
     let moist = &state.moisture;
     let per_water = (gam - 1.0) * moist.density_slope - moist.viscosity_slope * per_d;
     let water_per_humidity = if humidity > 0.0 { moist.water / humidity } else { 0.0 };
     Sensitivities {
-        pressure_drop: gam * (1.0 - gas * 0.5 * drop * per_mean) - expansion,
+        pressure_drop: gam * (1.0 - z * 0.5 * drop * per_mean) - expansion,
         temperature: (gam - 1.0) * fluid.expansion()
             + (slip * (n + 0.5) - n * per_d) / t
             + (3.0 + 4.0 * eps) * state.element_expansion * per_d
             + per_water * moist.water_by_temperature
             - moist.viscosity_by_temperature * per_d,
-        line_pressure: gas * (gam * stretch - 1.0 - slip * stretch + expansion)
+        line_pressure: z * (gam * stretch - 1.0) + gas * (expansion - slip * stretch)
             - fluid.k[0] * law.line_pressure * per_d
             - per_water * moist.water,
         viscosity: -per_d,

@@ -131,6 +131,8 @@ pub(crate) struct Solution<F> {
     pub log_ratio: F,
     /// q at the solution.
     pub q: F,
+    /// -dq/dln x at the solution.
+    pub fall: F,
     /// eps = B' x/A', the kinetic share over the viscous one.
     pub kinetic_share: F,
 }
@@ -188,6 +190,11 @@ impl<F: Real> Prepared<F> {
         self.q_and_fall(x, developed, self.developing_gain * log_ratio).0
     }
 
+    /// dq/dl at x (m, positive).
+    pub fn q_by_log(&self, x: F) -> F {
+        self.expansion_gain - self.developing_gain * x / (F::of(1.0) + self.shrinking * x)
+    }
+
     /// q, and how it falls with x: -dq/dln x; of q far from the entrance, and of (c/K1) l/X_L.
     fn q_and_fall(&self, x: F, developed: F, gain: F) -> (F, F) {
         let one = F::of(1.0);
@@ -217,17 +224,17 @@ impl<F: Real> Prepared<F> {
         let x0 = over * drop.magnitude() * more / (mu * mu * self.a * under);
         let b = self.b_over_a * more;
         let (developed, gain) = (one + self.expansion_gain * l, self.developing_gain * l);
-        let mut q = developed;
+        let (mut q, mut fall) = (developed, F::of(0.0));
         let mut x = x0 / (half + (quarter + b * x0 * q).root());
         let [long, short] = STEPS;
         for _ in 0..if x <= self.entrance_reach { long } else { short } {
-            let fall;
             (q, fall) = self.q_and_fall(x, developed, gain);
             let (eps, rest) = (b * x, q - fall);
             x = (x0 + eps * x * rest) / (one + eps * (q + rest));
         }
         let signed = if drop < F::of(0.0) { -x } else { x };
-        Solution { x: signed, mean_pressure: mean, viscosity: mu, slip, log_ratio: l, q, kinetic_share: b * q * x }
+        let kinetic_share = b * q * x;
+        Solution { x: signed, mean_pressure: mean, viscosity: mu, slip, log_ratio: l, q, fall, kinetic_share }
     }
 
     /// Inverse: the pressure drop (Pa, signed) that drives a mass flow (kg/s, signed); absent when no outlet pressure

@@ -91,6 +91,15 @@ impl<F: Real> PropertiesAt<F> {
         if self.gas { over / under } else { over }
     }
 
+    /// dln rho/dln p at absolute pressure `p`.
+    pub fn density_exponent(&self, p: F) -> F {
+        let one = F::of(1.0);
+        let [b, c, d] = self.z;
+        let series = one + p * (b + p * (c + p * d));
+        let relative = p * (b + p * (F::of(2.0) * c + F::of(3.0) * d * p)) / series;
+        if self.gas { one - relative } else { relative }
+    }
+
     /// Density as numerator (kg/m3) and denominator, which is 1 for a liquid.
     pub fn density_ratio(&self, p: F) -> [F; 2] {
         let [b, c, d] = self.z;

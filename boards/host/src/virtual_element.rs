@@ -30,6 +30,8 @@ mod inlet; // plenum to uniform profile
 
 mod profile; // what is carried along the channel
 
+pub mod channel; // one channel, its wall, the units of a march
+
 mod step; // one position of the march
 
 pub mod march; // one channel, inlet to outlet
@@ -41,9 +43,10 @@ pub mod spread; // unequal bores
 pub mod element; // channels in parallel
 
 #[doc(inline)]
-pub use element::{Outcome, Upstream, VirtualElement};
+pub use channel::Wall;
 #[doc(inline)]
-pub use march::{Resolution, Station, Wall};
+pub use element::{Outcome, Upstream, VirtualElement};
+pub use march::{Resolution, Station};
 #[doc(inline)]
 pub use refused::Refused;
 #[doc(inline)]

@@ -1,7 +1,8 @@
 //! The element: channels in parallel between two plenums, and the flow through all of them.
 
+use super::channel::{Channel, Wall};
 use super::grid::Grid;
-use super::march::{Channel, Resolution, Station, Wall};
+use super::march::{Resolution, Station};
 use super::refused::{Refused, within};
 use super::search::{drop_of, flow};
 use super::section::Section;

@@ -11,6 +11,7 @@
 //! Weak form on the grid, so that momentum and energy are conserved to rounding; wall: slip, and a temperature jump or
 //! no heat. Backward differences of third order along z; Newton's method at each position.
 
+use super::channel::{Channel, Scales, Wall};
 use super::differences::{derivative, extrapolation, positions};
 use super::grid::Grid;
 use super::inlet::{Entrance, Place, enter};
@@ -18,7 +19,7 @@ use super::profile::{Carried, Profile};
 use super::refused::Refused;
 use super::section::Section;
 use super::step::{Past, Step};
-use super::substance::{Reference, Substance};
+use super::substance::Reference;
 use nalgebra::DVector;
 
 /// Mean velocity over the speed of sound up to which the solution is given.
@@ -56,33 +57,6 @@ impl Resolution {
     }
 }
 
-/// What the wall does to the fluid's temperature.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub enum Wall {
-    /// The wall has the element's temperature.
-    Isothermal,
-    /// No heat passes the wall.
-    Adiabatic,
-    /// The fluid keeps the temperature it enters with, as if its heat capacity were unlimited: no energy equation.
-    UnlimitedCapacity,
-}
-
-/// One channel and what flows in it.
-#[derive(Debug, Clone, Copy)]
-pub(crate) struct Channel<'a> {
-    pub section: Section,
-    /// m.
-    pub length: f64,
-    pub substance: Substance<'a>,
-    pub wall: Wall,
-    /// K.
-    pub wall_temperature: f64,
-    /// Absolute pressure of the upstream plenum, Pa.
-    pub pressure: f64,
-    /// Temperature of the upstream plenum, K.
-    pub temperature: f64,
-}
-
 /// Where the march passed.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Station {
@@ -96,27 +70,6 @@ pub struct Station {
     pub enthalpy_rise: f64,
     /// Mach number of the mean velocity; 0 for a liquid.
     pub mach: f64,
-}
-
-/// Units and constants of one march.
-#[derive(Debug, Clone, Copy)]
-pub(crate) struct Scales {
-    /// Mass flow per area, kg/(m2 s).
-    pub flux: f64,
-    /// Density of the plenum, kg/m3.
-    pub density: f64,
-    /// G/rho1, m/s.
-    pub speed: f64,
-    /// Pressure of the plenum, Pa.
-    pub pressure: f64,
-    pub reference: Reference,
-}
-
-impl Scales {
-    /// Absolute pressure at a loss.
-    pub fn pressure_at(&self, loss: f64) -> f64 {
-        self.pressure - self.density * self.speed * self.speed * loss
-    }
 }
 
 impl Channel<'_> {

@@ -1,7 +1,8 @@
 //! The flow that a pressure drop drives: a search on the march, coarse first.
 
+use super::channel::Channel;
 use super::grid::Grid;
-use super::march::{Channel, Resolution, Station};
+use super::march::{Resolution, Station};
 use super::refused::Refused;
 
 /// Relative difference of the pressure drop at which the search ends.

@@ -1,7 +1,7 @@
 //! One step of the march: Newton's method for velocity and pressure, then temperature, until all settle.
 
+use super::channel::{Channel, Scales, Wall};
 use super::grid::Grid;
-use super::march::{Channel, Scales, Wall};
 use super::profile::{Carried, Profile};
 use super::refused::Refused;
 use super::substance::State;
