@@ -349,6 +349,30 @@ fn scatter_alone_is_covered_with_students_factor() {
     }
 }
 
+/// A common zero counts alike whether the independent errors are stated or are told by the scatter.
+#[test]
+fn a_common_zero_counts_beside_scatter_as_beside_stated_errors() {
+    let errors = Errors { drop: 1e-3, ..Errors::default() };
+    let covariance = |zero: Option<f64>, scatter: Option<f64>| {
+        let mut run = run(&law(&made()), &drops(12), &errors, &mut Noise(17));
+        for point in &mut run.points {
+            let independent = scatter.map(|scatter| scatter * point.pressure_drop);
+            point.u.pressure_drop = Parts { independent, common: zero };
+        }
+        let found = fitted(&run, NITROGEN.fluid());
+        (found.covariance.standard_uncertainties(), found.scatter)
+    };
+    for zero in [None, Some(2.0)] {
+        let (from_scatter, scatter) = covariance(zero, None);
+        let (stated, _) = covariance(zero, Some(scatter));
+        for (got, expected) in from_scatter.iter().zip(stated) {
+            assert_close(*got, expected, 0.05, &format!("zero {zero:?}"));
+        }
+    }
+    let ([without, _], [with, _]) = (covariance(None, None).0, covariance(Some(2.0), None).0);
+    assert!(with > 2.0 * without, "the zero is lost: {with} beside {without}");
+}
+
 /// Budget lines add up to the combined uncertainty of the flow.
 #[test]
 fn the_budget_adds_up() -> Outcome {

@@ -56,7 +56,7 @@ pub struct Solution {
     pub a: f64,
     /// 1/m4.
     pub b: f64,
-    /// Covariance of the fit alone, scaled by the scatter when that is the basis.
+    /// Covariance of the fit alone, at the weights of the scatter when that is the basis.
     pub covariance: PairCovariance,
     /// Parts common to all points, the zero of the pressure drop excepted (it is in `covariance`).
     pub common: Vec<CommonShift>,
@@ -233,36 +233,37 @@ pub fn fit(samples: &[Sample], u_viscosity: f64, prior: Option<Prior>) -> Result
         (Basis::Residuals, Some(_)) => Some(fit(samples, u_viscosity, None)?.scatter.max(f64::EPSILON)),
         _ => None,
     };
-    let problem = Problem { samples, prior, zero: zero_like(samples), scatter: known_scatter.unwrap_or(1.0) };
+    let mut problem = Problem { samples, prior, zero: zero_like(samples), scatter: known_scatter.unwrap_or(1.0) };
+    let scatter_unknown = basis == Basis::Residuals && known_scatter.is_none();
     let y = problem.column(|s| s.columns.y, prior.map_or(0.0, |prior| prior.value));
     let (mut a, mut b) = (mean_y(samples)?, 0.0);
     let mut sigmas = problem.sigmas(basis, a, b);
     let mut fit = problem.solve(&y, &sigmas, &problem.zero_effects(a, b))?;
     for _ in 0..ROUNDS {
         (a, b) = (fit.solution[0], fit.solution[1]);
+        if scatter_unknown {
+            // The scatter becomes the weights' own, so that a zero stands beside it in its true size.
+            let unit = fit.residual_variance().unwrap_or(1.0).sqrt();
+            problem.scatter = (problem.scatter * unit).max(f64::EPSILON);
+        }
         sigmas = problem.sigmas(basis, a, b);
         fit = problem.solve(&y, &sigmas, &problem.zero_effects(a, b))?;
     }
     (a, b) = (fit.solution[0], fit.solution[1]);
     let common = shifts(&problem, u_viscosity, &sigmas, a, b)?;
     let n = samples.len();
-    let scatter = match (basis, known_scatter) {
-        (Basis::Residuals, None) => fit.residual_variance().unwrap_or(1.0),
-        _ => 1.0,
-    };
-    let unit = scatter.sqrt();
     Ok(Solution {
         a,
         b,
-        covariance: PairCovariance::from_fit(&fit)?.scaled(scatter),
+        covariance: PairCovariance::from_fit(&fit)?,
         common,
-        chi_squared: fit.chi_squared / scatter,
+        chi_squared: fit.chi_squared,
         degrees_of_freedom: fit.degrees_of_freedom - if known_scatter.is_some() { 1 } else { 0 },
-        standardised: fit.standardised.iter().take(n).map(|r| r / unit).collect(),
+        standardised: fit.standardised.iter().take(n).copied().collect(),
         leave_one_out: leave_one_out(&fit, basis, n),
-        sigmas: sigmas.iter().take(n).map(|s| s * unit).collect(),
+        sigmas: sigmas.iter().take(n).copied().collect(),
         basis,
-        scatter: problem.scatter * unit,
+        scatter: problem.scatter,
         prior,
     })
 }
