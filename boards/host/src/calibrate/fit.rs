@@ -15,7 +15,7 @@ use evenbore::calibration::Cause;
 /// Rounds of reweighting.
 const ROUNDS: usize = 4;
 
-/// Relative standard uncertainty above which the data are held not to fix B.
+/// Standard uncertainty, over nominal B, above which the data are held not to fix B.
 pub const UNFIXED_B: f64 = 0.20;
 /// Relative standard uncertainty of B from geometry.
 pub const PRIOR_B: f64 = 0.10;

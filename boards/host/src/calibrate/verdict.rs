@@ -202,7 +202,7 @@ pub fn best_fit(used: &[Sample], nominal: Option<[f64; 2]>, u_viscosity: f64) ->
     let free = fit::fit(used, u_viscosity, None)?;
     let [_, u_b] = free.covariance.standard_uncertainties();
     let prior = match nominal {
-        Some([_, b]) if free.b <= 0.0 || u_b > UNFIXED_B * free.b => Prior { value: b, u: fit::PRIOR_B * b },
+        Some([_, b]) if free.b <= 0.0 || u_b > UNFIXED_B * b => Prior { value: b, u: fit::PRIOR_B * b },
         None if free.b < 0.0 => Prior { value: 0.0, u: 0.01 * free.b.abs() },
         _ => return Ok(free),
     };
@@ -229,7 +229,7 @@ fn distance_from_drawing(points: &Points, order: &Order<'_>, fluid: &StoredFluid
     let samples: Result<Vec<Sample>, Refusal> = points.points.iter().map(|p| Sample::new(&setup, p)).collect();
     let fitted = fit::fit(&used(&samples.ok()?, order), 0.0, None).ok()?;
     let [limit_a, limit_b] = findings::GEOMETRY_LIMITS;
-    let [_, u_b] = fitted.covariance.standard_uncertainties();
+    let [_, u_b] = fitted.total().standard_uncertainties();
     let (off_a, off_b) = ((fitted.a / a0 - 1.0).abs(), (fitted.b / b0 - 1.0).abs());
     (off_a < limit_a && off_b < limit_b + 2.0 * u_b / b0).then_some(off_a)
 }
