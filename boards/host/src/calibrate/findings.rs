@@ -288,15 +288,15 @@ fn geometry(run: &Run<'_>, explained: bool) -> Option<Finding> {
 fn prior_used(run: &Run<'_>) -> Option<Finding> {
     let prior = run.solution.prior?;
     if prior.value == 0.0 {
-        let message = "The run does not show a kinetic term and the drawing gives none; B is held at zero, and the \
-                       range of validity ends with the run";
+        let message = "The run does not show a kinetic term and the drawing gives none; B is held at zero, and \
+                       flows more than a fifth beyond the run are flagged";
         return Some(finding("b-from-prior", Vec::new(), false, message.into()));
     }
     Some({
         let percent = 100.0 * prior.u / prior.value;
         let message = format!(
             "The run does not reach flows large enough to fix B; it is held at its geometric value within {percent:.0} %, \
-             and the range of validity ends with the run"
+             and flows more than a fifth beyond the run are flagged"
         );
         finding("b-from-prior", Vec::new(), false, message)
     })
