@@ -369,6 +369,14 @@ fn a_common_zero_counts_beside_scatter_as_beside_stated_errors() {
             assert_close(*got, expected, 0.05, &format!("zero {zero:?}"));
         }
     }
+    let listed = {
+        let mut run = run(&law(&made()), &drops(12), &errors, &mut Noise(17));
+        run.points.iter_mut().for_each(|point| point.u.pressure_drop.common = Some(2.0));
+        judged(&run).calibration
+    };
+    let zero = listed.common.iter().find(|part| part.name == "pressure-drop-zero").expect("a listed zero");
+    assert_eq!((zero.u, zero.unit.as_str()), (2.0, "Pa"));
+    assert!(zero.effect_a.abs() > 0.0 && zero.effect_a.abs() < listed.u_a_fit, "{zero:?}");
     let ([without, _], [with, _]) = (covariance(None, None).0, covariance(Some(2.0), None).0);
     assert!(with > 2.0 * without, "the zero is lost: {with} beside {without}");
 }

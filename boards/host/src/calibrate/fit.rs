@@ -60,6 +60,8 @@ pub struct Solution {
     pub covariance: PairCovariance,
     /// Parts common to all points, the zero of the pressure drop excepted (it is in `covariance`).
     pub common: Vec<CommonShift>,
+    /// What one standard uncertainty of the common zero does; it is in `covariance` already.
+    pub zero: Option<CommonShift>,
     /// Effective standard uncertainty of Y per point, 1/m3 (1/m3 of scatter when residuals are the basis).
     pub sigmas: Vec<f64>,
     /// Weighted sum of squared residuals, and its degrees of freedom.
@@ -251,12 +253,14 @@ pub fn fit(samples: &[Sample], u_viscosity: f64, prior: Option<Prior>) -> Result
     }
     (a, b) = (fit.solution[0], fit.solution[1]);
     let common = shifts(&problem, u_viscosity, &sigmas, a, b)?;
+    let zero = zero_shift(&problem, &sigmas, a, b)?;
     let n = samples.len();
     Ok(Solution {
         a,
         b,
         covariance: PairCovariance::from_fit(&fit)?,
         common,
+        zero,
         chi_squared: fit.chi_squared,
         degrees_of_freedom: fit.degrees_of_freedom - if known_scatter.is_some() { 1 } else { 0 },
         standardised: fit.standardised.iter().take(n).copied().collect(),
@@ -303,6 +307,16 @@ fn shifts(problem: &Problem<'_>, u_viscosity: f64, sigmas: &[f64], a: f64, b: f6
         shifts.push(CommonShift { cause, u, shift: [settled(shift[0], a), settled(shift[1], b)] });
     }
     Ok(shifts)
+}
+
+/// What one standard uncertainty of the common zero does to A and B, if there is one.
+fn zero_shift(problem: &Problem<'_>, sigmas: &[f64], a: f64, b: f64) -> Result<Option<CommonShift>> {
+    let Some(u) = largest_u(problem.samples, Cause::PressureDropZero, 0.0).filter(|_| problem.zero) else {
+        return Ok(None);
+    };
+    let effects = problem.zero_effects(a, b);
+    let answer = problem.solve(&effects, sigmas, &effects)?;
+    Ok(Some(CommonShift { cause: Cause::PressureDropZero, u, shift: [answer.solution[0], answer.solution[1]] }))
 }
 
 /// A shift, or zero where it is below the rounding of the coefficient it moves.

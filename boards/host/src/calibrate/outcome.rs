@@ -33,7 +33,8 @@ pub struct Calibration {
     pub u_b_fit: f64,
     /// Correlation of `a` and `b` from the fit alone.
     pub correlation_ab_fit: f64,
-    /// Parts shared by all points; they do not average away.
+    /// Parts shared by all points; they do not average away. `pressure-drop-zero` is part of the fit's own uncertainty
+    /// (`u_a_fit`, `u_b_fit`) as well, the others are not.
     pub common: Vec<CommonEffect>,
     /// Whether `b` rests on the geometry rather than on the data.
     pub b_from_prior: bool,

@@ -312,7 +312,7 @@ fn outcome(
         u_a_fit,
         u_b_fit,
         correlation_ab_fit: solution.covariance.correlation(),
-        common: solution.common.iter().map(effect).collect(),
+        common: solution.common.iter().chain(&solution.zero).map(effect).collect(),
         b_from_prior: solution.prior.is_some(),
         chi_squared: solution.chi_squared,
         degrees_of_freedom: solution.degrees_of_freedom as f64,
