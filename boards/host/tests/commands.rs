@@ -685,3 +685,20 @@ fn an_oil_of_ones_own_calibrates_with_b_from_geometry() -> Outcome {
     assert!(used.status.success(), "{}", err(&used));
     Ok(())
 }
+
+#[test]
+fn options_that_cannot_be_meant_are_named() -> Outcome {
+    let bench = Bench::new()?;
+    bench.calibrate("bench-nitrogen.csv", "")?;
+    let refused = |more: &str, parts: &[&str]| -> Outcome {
+        let output = bench.run(&format!("flow day-air-helium.csv --out flows.csv {more}"))?;
+        assert_eq!(output.status.code(), Some(2), "{more}");
+        assert_holds(&err(&output), parts);
+        assert!(!bench.path("flows.csv").exists());
+        Ok(())
+    };
+    refused("", &["--record <RECORD.toml>", "--element <ELEMENT.toml>"])?;
+    refused("--record out/record.toml --fluid nitrogen", &["day-air-helium.csv:", "--fluid says nitrogen"])?;
+    refused("--record out/record.toml --fluid phlogiston", &["evenbore: --fluid: ", "phlogiston"])?;
+    refused("--record out/record.toml --u-temperature 1000K", &["evenbore: --u-temperature: ", "temperature (K)"])
+}

@@ -55,6 +55,16 @@ pub struct UncertainParts {
 }
 
 impl SensorOptions {
+    /// The options that were given.
+    pub fn names(&self) -> String {
+        let given = [
+            self.u_pressure_drop.map(|_| "--u-pressure-drop"),
+            self.u_temperature.map(|_| "--u-temperature"),
+            self.u_line_pressure.map(|_| "--u-line-pressure"),
+        ];
+        given.into_iter().flatten().collect::<Vec<_>>().join(", ")
+    }
+
     /// The sensors: what the options say over what `otherwise` says.
     pub fn over(&self, otherwise: SensorUncertainty) -> SensorUncertainty {
         let mut sensors = otherwise;
