@@ -702,3 +702,25 @@ fn options_that_cannot_be_meant_are_named() -> Outcome {
     refused("--record out/record.toml --fluid phlogiston", &["evenbore: --fluid: ", "phlogiston"])?;
     refused("--record out/record.toml --u-temperature 1000K", &["evenbore: --u-temperature: ", "temperature (K)"])
 }
+
+/// A refused run leaves no record beside its report, and what cannot be written whole is not written at all.
+#[test]
+fn results_of_a_run_belong_together() -> Outcome {
+    let bench = Bench::new()?;
+    bench.calibrate("bench-nitrogen.csv", "")?;
+    let (record, report) = (bench.read("out/record.toml")?, bench.read("out/report.html")?);
+    bench.write("doctored.csv", Sheet::bench()?.change(FLOW, |i, q| q * if i == 4 { 1.01 } else { 1.0 }).text())?;
+    fs::rename(bench.path("out/record.bin"), bench.path("kept.bin"))?;
+    fs::create_dir(bench.path("out/record.bin"))?;
+    let output = bench.run("calibrate bench-nitrogen.csv --element element.toml --out out")?;
+    assert_eq!(output.status.code(), Some(2));
+    assert_eq!(bench.read("out/report.html")?, report);
+    fs::remove_dir(bench.path("out/record.bin"))?;
+    fs::rename(bench.path("kept.bin"), bench.path("out/record.bin"))?;
+    let output = bench.run("calibrate doctored.csv --element element.toml --out out")?;
+    assert_eq!(output.status.code(), Some(3));
+    assert_holds(&err(&output), &["record.toml is of an earlier run and is now", "record.bin.earlier"]);
+    assert!(!bench.path("out/record.toml").exists() && !bench.path("out/record.bin").exists());
+    assert_eq!(bench.read("out/record.toml.earlier")?, record);
+    Ok(())
+}
