@@ -30,6 +30,9 @@ enum Command {
     /// the one that all points share and that does not average away. Without any of the former the scatter of the
     /// points is taken, with fewer degrees of freedom and a larger coverage factor.
     ///
+    /// The record states uncertainties for an instrument whose sensors have standard uncertainties of 0.2 Pa and 0.1 %
+    /// of pressure drop, 0.1 K, and 0.1 % of line pressure, unless the options below say otherwise.
+    ///
     /// The run is refused (exit code 3, no record) when the points do not fit the laminar law within their stated
     /// uncertainties, when one stands out, or when A and B are not those of the drawing; the findings say why.
     #[command(after_long_help = "Example:\n  evenbore calibrate bench.csv --element element.toml --out EB-0042")]

@@ -575,6 +575,7 @@ fn damaged_records_are_refused() -> Outcome {
     refused("typo.toml", &["typo.toml:"])?;
     bench.write("other.toml", "x = 1\n")?;
     refused("other.toml", &["other.toml:"])?;
+    refused("element.toml", &["element.toml: not a calibration record: this looks like an element file"])?;
     refused("absent.toml", &["absent.toml: cannot open"])
 }
 
