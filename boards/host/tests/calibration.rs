@@ -378,7 +378,7 @@ fn a_common_zero_counts_beside_scatter_as_beside_stated_errors() {
     assert_eq!((zero.u, zero.unit.as_str()), (2.0, "Pa"));
     assert!(zero.effect_a.abs() > 0.0 && zero.effect_a.abs() < listed.u_a_fit, "{zero:?}");
     let ([without, _], [with, _]) = (covariance(None, None).0, covariance(Some(2.0), None).0);
-    assert!(with > 2.0 * without, "the zero is lost: {with} beside {without}");
+    assert!(with > 1.5 * without, "the zero is lost: {with} beside {without}");
 }
 
 /// Budget lines add up to the combined uncertainty of the flow.
@@ -394,7 +394,7 @@ fn the_budget_adds_up() -> Outcome {
     };
     let top = found.uncertainty.last().ok_or("no rows")?;
     let combined = top.type_a.hypot(top.common).hypot(top.sensors);
-    assert_close(total(1.0), combined, 0.02, "budget at full scale");
+    assert_close(total(1.0), combined, 0.005, "budget at full scale");
     assert!(total(0.1) > total(1.0));
     Ok(())
 }

@@ -56,6 +56,8 @@ pub struct Calibration {
     pub geometry: GeometryRatio,
     /// Range over which the calibration holds.
     pub range: Range,
+    /// State at which the uncertainties hold.
+    pub state: MeanState,
     /// Uncertainty over the range, small flow to large.
     pub uncertainty: Vec<UncertaintyRow>,
     /// A row per point.
@@ -113,6 +115,17 @@ pub struct Range {
     pub reynolds_max: Option<f64>,
     /// Largest pressure drop of the run, Pa.
     pub pressure_drop_max: f64,
+}
+
+/// Means of the points used.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize, Deserialize)]
+pub struct MeanState {
+    /// Element temperature, K.
+    pub temperature: f64,
+    /// Absolute line pressure, Pa.
+    pub line_pressure: f64,
+    /// Relative humidity, 0 to 1; absent when no point states one.
+    pub relative_humidity: Option<f64>,
 }
 
 /// Relative uncertainty of volume flow at one flow, with the sensors of the record.

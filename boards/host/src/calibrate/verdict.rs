@@ -3,7 +3,7 @@
 use crate::calibrate::certainty::{budget, uncertainty_rows};
 use crate::calibrate::findings::{self, Run};
 use crate::calibrate::fit::{self, Prior, Solution, UNFIXED_B};
-use crate::calibrate::outcome::{Calibration, CommonEffect, Finding, GeometryRatio, Range, ResidualRow};
+use crate::calibrate::outcome::{Calibration, CommonEffect, Finding, GeometryRatio, MeanState, Range, ResidualRow};
 use crate::calibrate::samples::{Sample, Setup, Slope, Source};
 use crate::input::points::{Point, Points};
 use crate::input::problem::Problem;
@@ -277,6 +277,16 @@ fn mean(used: &[Sample], of: impl Fn(&Sample) -> f64) -> f64 {
     used.iter().map(of).sum::<f64>() / used.len() as f64
 }
 
+/// The state at which uncertainties are stated.
+fn mean_state(used: &[Sample]) -> MeanState {
+    let humid: Vec<f64> = used.iter().filter_map(|s| s.relative_humidity).collect();
+    MeanState {
+        temperature: mean(used, |s| s.temperature),
+        line_pressure: mean(used, |s| s.line_pressure),
+        relative_humidity: (!humid.is_empty()).then(|| humid.iter().sum::<f64>() / humid.len() as f64),
+    }
+}
+
 /// Puts together all that was found.
 fn outcome(
     points: &Points,
@@ -295,7 +305,7 @@ fn outcome(
     let per_x = run.reynolds_per_x;
     let largest_drop = run.samples.iter().map(|s| s.pressure_drop.abs()).fold(0.0, f64::max);
     let (year, month, day) = order.date;
-    let state = [mean(run.samples, |s| s.temperature), mean(run.samples, |s| s.line_pressure)];
+    let state = mean_state(run.samples);
     let dof = solution.type_a_degrees_of_freedom();
     Calibration {
         serial: order.serial.into(),
@@ -334,9 +344,10 @@ fn outcome(
             reynolds_max: (per_x > 0.0).then_some(x_max * per_x),
             pressure_drop_max: largest_drop,
         },
-        uncertainty: uncertainty_rows(record, state, dof),
+        state,
+        uncertainty: uncertainty_rows(record, &state, largest_drop, dof),
         residuals: residuals(points, order, run, all),
-        budget: budget(record, state, largest_drop, &solution.common, dof),
+        budget: budget(record, &state, largest_drop, &solution.common, dof),
     }
 }
 

@@ -152,6 +152,7 @@ fn write_results(arguments: &Arguments, file: &ElementFile, verdict: &Verdict) -
         tool_version: env!("CARGO_PKG_VERSION").into(),
         command: std::env::args_os().skip(1).fold("evenbore".into(), |line, word| line + " " + &word.to_string_lossy()),
         record_crc: verdict.record.as_ref().map(|record| format!("{:08x}", record.checksum())),
+        sensors: arguments.sensors.origin(&SensorUncertainty::COMMON),
         element: describe(file),
     };
     let page = render(&verdict.calibration, &provenance)
