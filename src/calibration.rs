@@ -29,10 +29,12 @@ pub enum Cause {
     PressureDropZero,
     /// Nominal geometry instead of a calibration.
     Geometry,
+    /// What the water in the bench's air did to its viscosity.
+    Moisture,
 }
 
 impl Cause {
-    pub(crate) const ALL: [Self; 7] = [
+    pub(crate) const ALL: [Self; 8] = [
         Self::ReferenceFlow,
         Self::Viscosity,
         Self::PressureDrop,
@@ -40,6 +42,7 @@ impl Cause {
         Self::Temperature,
         Self::PressureDropZero,
         Self::Geometry,
+        Self::Moisture,
     ];
 
     /// The cause's name, lower case with hyphens.
@@ -52,6 +55,7 @@ impl Cause {
             Self::Temperature => "temperature",
             Self::PressureDropZero => "pressure-drop-zero",
             Self::Geometry => "geometry",
+            Self::Moisture => "moisture",
         }
     }
 }

@@ -95,7 +95,8 @@ impl Conditions {
     pub(crate) fn solve(&self, pressure_drop: PressureDrop) -> Result<Solution<f32>, Refusal> {
         let drop = pressure_drop.as_pascals();
         self.state.check(drop)?;
-        Ok(self.state.law.solve(drop))
+        let at = self.state.law.solve(drop);
+        if at.x.is_finite() { Ok(at) } else { Err(Refusal::NOT_FINITE) }
     }
 
     pub(crate) fn interpret(&self, at: &Solution<f32>) -> Sample {
@@ -124,6 +125,21 @@ impl Conditions {
         let mass = volume.as_cubic_metres_per_second() * self.state.line_density;
         let standard = if self.standard_volume > 0.0 { Some(mass * self.standard_volume) } else { None };
         (MassFlow::from_kilograms_per_second(mass), standard.map(VolumeFlow::from_cubic_metres_per_second))
+    }
+
+    /// Sensitivities of mass flow and of dry flow at reference conditions, from those of volume flow.
+    pub(crate) fn amounts(&self, volume: &Sensitivities, reading: &Reading) -> [Sensitivities; 2] {
+        let moist = &self.state.moisture;
+        let humidity = reading.relative_humidity.map_or(0.0, RelativeHumidity::as_fraction);
+        let water_per_humidity = if humidity > 0.0 { moist.water / humidity } else { 0.0 };
+        let with_density = |per_water: f32| Sensitivities {
+            temperature: volume.temperature + self.state.law.fluid.expansion() + per_water * moist.water_by_temperature,
+            line_pressure: volume.line_pressure + self.state.law.compressible - per_water * moist.water,
+            relative_humidity: volume.relative_humidity + per_water * water_per_humidity,
+            ..*volume
+        };
+        // A mole of water takes the place of a mole of dry air.
+        [with_density(moist.density_slope), with_density(-1.0 / (1.0 - moist.water))]
     }
 
     pub(crate) fn sensitivities(&self, at: &Solution<f32>, reading: &Reading) -> Sensitivities {

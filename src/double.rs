@@ -138,6 +138,11 @@ impl Conditions {
         })
     }
 
+    /// Relative standard uncertainty of the viscosity from the water in air, known or not.
+    pub fn u_viscosity_of_water(&self) -> f64 {
+        self.state.moisture.u_viscosity
+    }
+
     /// Density at the line pressure, kg/m3.
     pub fn line_density(&self) -> f64 {
         self.state.line_density

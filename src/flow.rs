@@ -19,9 +19,6 @@ use crate::state::State;
 use crate::status::{Refusal, Status};
 use crate::uncertainty::{Sensitivities, Uncertainty, common_part, fit_part, sensor_part};
 
-/// Kelvin over which a viscosity ratio's uncertainty grows from nothing to its stated value.
-const RATIO_SPAN: f32 = 50.0;
-
 /// An element, the fluid in it and what is known of both: validated once, then it only answers.
 ///
 /// ```
@@ -195,11 +192,15 @@ impl<'a> Meter<'a> {
         let solution = at.solve(reading.pressure_drop)?;
         let sensitivities = at.sensitivities(&solution, reading);
         let uncertainty = self.uncertainty(at, &sensitivities, reading, sensors);
+        let [mass_uncertainty, standard_uncertainty] = at.amounts(&sensitivities, reading).map(|s| Uncertainty {
+            sensors: sensor_part(&s, sensors, reading.pressure_drop.as_pascals(), reading.line_pressure.as_pascals()),
+            ..uncertainty
+        });
         let sample = match self.arithmetic {
             Arithmetic::Single => at.interpret(&solution),
             Arithmetic::Curve => by_curve(at, at.interpret(&solution), reading.pressure_drop)?,
         };
-        Ok(Flow { sample, sensitivities, uncertainty })
+        Ok(Flow { sample, sensitivities, uncertainty, mass_uncertainty, standard_uncertainty })
     }
 
     /// Relative standard uncertainty of the viscosity at a reading, as far as it does not cancel against the
@@ -248,10 +249,9 @@ impl<'a> Meter<'a> {
     /// of the ratio between temperatures, growing from nothing to its stated value over 50 K.
     fn u_viscosity(&self, temperature: Temperature) -> f32 {
         if self.calibrated_on_this_fluid {
-            let away = (temperature.as_kelvin() - self.quality.temperature_k.as_kelvin()).abs() / RATIO_SPAN;
-            self.fluid.u_viscosity_ratio * if away < 1.0 { away } else { 1.0 }
+            self.fluid.u_ratio_between(temperature, self.quality.temperature_k)
         } else {
-            self.fluid.u_viscosity
+            self.fluid.u_viscosity_at(temperature)
         }
     }
 }
@@ -278,6 +278,10 @@ pub struct Flow {
     pub sensitivities: Sensitivities,
     /// Relative standard uncertainty of the volume flow.
     pub uncertainty: Uncertainty,
+    /// Relative standard uncertainty of the mass flow, which answers to line pressure and temperature through density.
+    pub mass_uncertainty: Uncertainty,
+    /// Relative standard uncertainty of the flow at reference conditions, dry.
+    pub standard_uncertainty: Uncertainty,
 }
 
 impl core::ops::Deref for Flow {

@@ -113,7 +113,10 @@ impl Record {
         if !printable(&self.reason) {
             return Err(Error::BadText { field: "reason", most: REASON_LENGTH });
         }
-        within("date (YYYYMMDD)", self.date as f32, 19_700_101.0, 99_991_231.0)?;
+        let (year, month, day) = (self.date / 10_000, self.date / 100 % 100, self.date % 100);
+        within("year of the date (YYYYMMDD)", year as f32, 1970.0, 9999.0)?;
+        within("month of the date (YYYYMMDD)", month as f32, 1.0, 12.0)?;
+        within("day of the date (YYYYMMDD)", day as f32, 1.0, 31.0)?;
         self.trims.check()?;
         self.sensors.check()?;
         ReferenceConditions::new(self.reference.temperature, self.reference.pressure)?;

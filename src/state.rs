@@ -2,7 +2,7 @@
 
 use crate::element::law::{Channels, Prepared};
 use crate::fluid::StoredFluid;
-use crate::fluid::moist_air::{Moisture, moisture};
+use crate::fluid::moist_air::{Moisture, moisture_of};
 use crate::fluid::properties::{PropertiesAt, outside};
 use crate::math::Real;
 use crate::status::Refusal;
@@ -36,10 +36,7 @@ impl<F: Real> State<F> {
         if !refusal.is_empty() {
             return Err(refusal);
         }
-        let moisture = match humidity {
-            Some(fraction) => moisture(fluid, fraction, temperature, line_pressure)?,
-            None => Moisture::none(),
-        };
+        let moisture = moisture_of(fluid, humidity, temperature, line_pressure)?;
         let mut properties = PropertiesAt::new(fluid, temperature);
         if humidity.is_some() {
             properties = moisture.moisten(properties);

@@ -21,8 +21,11 @@ fn field(manifest: &str, key: &str) -> String {
 fn versions_are_those_of_the_manifests() {
     let readme = text("README.md");
     let (library, bench) = (text("Cargo.toml"), text("boards/host/Cargo.toml"));
-    let compilers =
-        format!("Rust {} or newer for\nthe library, {} for the bench", field(&library, "rust-version"), field(&bench, "rust-version"));
+    let compilers = format!(
+        "Rust {} or newer for\nthe library, {} for the bench",
+        field(&library, "rust-version"),
+        field(&bench, "rust-version")
+    );
     let one_line = |text: &str| text.split_whitespace().collect::<Vec<_>>().join(" ");
     assert!(one_line(&readme).contains(&one_line(&compilers)), "{compilers}");
     let version = field(&library, "version");
@@ -53,7 +56,10 @@ fn accuracies_are_those_the_tests_hold() {
         ("stated uncertainty against Monte Carlo", shown(tolerance::MONTE_CARLO)),
     ];
     for (what, limit) in rows {
-        let row = readme.lines().find(|line| line.starts_with(&format!("| {what}"))).unwrap_or_else(|| panic!("no row: {what}"));
+        let row = readme
+            .lines()
+            .find(|line| line.starts_with(&format!("| {what}")))
+            .unwrap_or_else(|| panic!("no row: {what}"));
         assert!(row.contains(&format!("| {limit} |")), "{row}: {limit}");
     }
 }
@@ -68,7 +74,8 @@ fn commands_and_features_exist() {
         assert!(readme.contains(&format!("`{name}` (")), "feature {name} is not described");
     }
     assert!(readme.contains("bash tests/all.sh"));
-    for file in ["examples/workshop/bench-nitrogen.csv", "examples/workshop/element.toml", "examples/slow_and_fast.rs"] {
+    for file in ["examples/workshop/bench-nitrogen.csv", "examples/workshop/element.toml", "examples/slow_and_fast.rs"]
+    {
         assert!(readme.contains(file) && Path::new(env!("CARGO_MANIFEST_DIR")).join(file).exists(), "{file}");
     }
 }

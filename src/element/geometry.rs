@@ -273,10 +273,16 @@ impl Element {
     /// Names the field that is not finite or outside its limits.
     pub fn check(&self) -> Result<(), Error> {
         const SIZES: [Limit; 3] =
-            [("open area (m2)", 0.0, 1e6), ("hydraulic diameter (m)", 0.0, 0.05), ("length (m)", 0.0, 10.0)];
-        all_within(&SIZES, [self.open_area, self.hydraulic_diameter, self.length])?;
+            [("open area (m2)", 5e-13, 1e6), ("hydraulic diameter (m)", 1e-6, 0.05), ("length (m)", 1e-4, 10.0)];
+        // What is unknown is 0: all three sizes, or the length alone.
+        let sizes = [self.open_area, self.hydraulic_diameter, self.length];
+        if sizes != [0.0; 3] {
+            let known = if self.length == 0.0 { SIZES[2].1 } else { self.length };
+            all_within(&SIZES, [self.open_area, self.hydraulic_diameter, known])?;
+        }
         self.constants.check()?;
         all_within(&COEFFICIENTS, [self.a, self.b])?;
+        within("b over a (1/m)", self.b / self.a, 0.0, 1e6)?;
         all_within(&GROWTH, [self.expansion, self.reference_temperature])
     }
 

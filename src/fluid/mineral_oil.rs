@@ -18,6 +18,10 @@ const VISCOSITY_PER_PASCAL: f32 = 2.0e-8;
 /// Isothermal compressibility of mineral oils, 1/Pa (from memory).
 const DENSITY_PER_PASCAL: f32 = 6.5e-10;
 
+/// Relative standard uncertainty that grows over 50 K away from 25 C, or from the calibration: the line of the standard
+/// follows an oil's viscosity to about 1 % (from memory).
+const U_AWAY: f32 = 0.01;
+
 /// What a data sheet says of an oil.
 #[derive(Debug, Clone, Copy)]
 pub struct OilData<'a> {
@@ -97,12 +101,12 @@ pub fn mineral_oil(data: &OilData<'_>) -> Result<StoredFluid, Error> {
     let frame = Frame {
         name: data.name,
         temperature_range: oil_range(&line),
-        pressure_range: [AbsolutePressure::from_pascals(1e3), AbsolutePressure::from_pascals(1e7)],
+        pressure_range: [AbsolutePressure::from_pascals(1e3), AbsolutePressure::from_pascals(1e6)],
         at_pressure: AbsolutePressure::from_pascals(101_325.0),
         viscosity_per_pascal: VISCOSITY_PER_PASCAL,
         density_per_pascal: DENSITY_PER_PASCAL,
         u_viscosity: data.u_viscosity,
-        u_viscosity_ratio: data.u_viscosity,
+        u_viscosity_ratio: data.u_viscosity + U_AWAY,
     };
     liquid(&frame, |t| line.kinematic(t) * 1e-6 * rho(t), rho)
 }

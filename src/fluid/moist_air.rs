@@ -5,7 +5,8 @@
 //! `Z = Z_dry + p/T (e1 x_w + (e2 + e3 (T - 293.15)) x_w^2)`, fitted to the real-gas humid air of ASHRAE RP-1485:
 //! within 27 ppm of it from 0 to 60 C and of CIPM-2007 from 15 to 27 C. Viscosity scales with
 //! `1 - x_w (m0 + m1 (T - 293.15))`, within 0.1 % of the same source to 40 C and 0.25 % to 60 C; sources disagree on
-//! m0 (0.10 to 0.51, from memory), so its uncertainty is 0.12 x_w.
+//! m0 (0.10 to 0.51, from memory), so its uncertainty is 0.12 x_w. Air whose humidity is not given is taken as dry and
+//! its viscosity as uncertain by 0.2 % at 20 C, 0.6 % at 40 C.
 
 use super::properties::{PropertiesAt, outside};
 use super::stored::{Name, StoredFluid};
@@ -68,6 +69,14 @@ impl<F: Real> Moisture<F> {
         }
     }
 
+    /// Air that nobody measured the humidity of: taken as dry, its viscosity uncertain by any humidity alike (m0 x_w of
+    /// saturated air over sqrt(12), rectangular).
+    pub fn unknown(temperature: F, pressure: F) -> Self {
+        let most = saturation_pressure(temperature) / pressure;
+        let most = if most > F::of(MOST_WATER) { F::of(MOST_WATER) } else { most };
+        Self { u_viscosity: F::of(VISCOSITY_TERMS[0] / 3.464_101_6) * most, ..Self::none() }
+    }
+
     /// Moist air: `humidity` a fraction of saturation over water, `temperature` K, `pressure` Pa, `molar_mass` of dry
     /// air in kg/mol.
     pub fn new(humidity: F, temperature: F, pressure: F, molar_mass: F) -> Self {
@@ -108,12 +117,7 @@ impl<F: Real> Moisture<F> {
 }
 
 /// Moisture of air at `temperature` (K) and `pressure` (Pa), or the reason why it cannot be.
-pub(crate) fn moisture<F: Real>(
-    fluid: &StoredFluid,
-    fraction: F,
-    temperature: F,
-    pressure: F,
-) -> Result<Moisture<F>, Refusal> {
+fn moisture<F: Real>(fluid: &StoredFluid, fraction: F, temperature: F, pressure: F) -> Result<Moisture<F>, Refusal> {
     let [low, high] = TEMPERATURE_RANGE.map(F::of);
     let possible = fraction >= F::of(0.0) && fraction <= F::of(1.0) && temperature >= low && temperature <= high;
     if !possible || fluid.name != MOIST_FLUID {
@@ -121,6 +125,23 @@ pub(crate) fn moisture<F: Real>(
     }
     let moisture = Moisture::new(fraction, temperature, pressure, F::stored(fluid.molar_mass));
     if moisture.water <= F::of(MOST_WATER) { Ok(moisture) } else { Err(Refusal::HUMIDITY_INVALID) }
+}
+
+/// Moisture of a fluid whose humidity is given or not, at `temperature` (K) and `pressure` (Pa).
+///
+/// # Errors
+/// Refuses a humidity that is not 0 to 1, not of air, or of air outside -20 to 60 C.
+pub(crate) fn moisture_of<F: Real>(
+    fluid: &StoredFluid,
+    humidity: Option<F>,
+    temperature: F,
+    pressure: F,
+) -> Result<Moisture<F>, Refusal> {
+    match humidity {
+        Some(fraction) => moisture(fluid, fraction, temperature, pressure),
+        None if fluid.name == MOIST_FLUID => Ok(Moisture::unknown(temperature, pressure)),
+        None => Ok(Moisture::none()),
+    }
 }
 
 impl StoredFluid {

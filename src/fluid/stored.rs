@@ -20,6 +20,9 @@ pub const FINE_NODES: usize = 33;
 /// Nodes of every other curve: 8 segments.
 pub const COARSE_NODES: usize = 9;
 
+/// Kelvin over which a viscosity ratio's uncertainty grows from nothing to its stated value.
+const RATIO_SPAN: f32 = 50.0;
+
 /// Viscosity whose logarithm a liquid's table counts from, Pa s.
 pub(crate) const LIQUID_SCALE: f64 = 0.01;
 
@@ -212,9 +215,30 @@ impl StoredFluid {
         [AbsolutePressure::from_pascals(low), AbsolutePressure::from_pascals(high)]
     }
 
-    /// Relative standard uncertainty of the viscosity.
+    /// Relative standard uncertainty of the viscosity at 25 C.
     pub const fn u_viscosity(&self) -> f32 {
         self.u_viscosity
+    }
+
+    /// Relative standard uncertainty of the viscosity at a temperature: that at 25 C, and that of the ratio to it, which
+    /// grows from nothing to its stated value over 50 K (a convention of this library).
+    ///
+    /// ```
+    /// use evenbore::{fluid::catalogue::HELIUM, quantity::Temperature};
+    /// let helium = HELIUM.fluid();
+    /// let (near, far) = (Temperature::from_celsius(25.0), Temperature::from_celsius(75.0));
+    /// assert!((helium.u_viscosity_at(near) / helium.u_viscosity() - 1.0).abs() < 1e-5);
+    /// assert!(helium.u_viscosity_at(far) > 1.3 * helium.u_viscosity());
+    /// ```
+    pub fn u_viscosity_at(&self, temperature: Temperature) -> f32 {
+        let ratio = self.u_ratio_between(temperature, Temperature::from_celsius(25.0));
+        (self.u_viscosity * self.u_viscosity + ratio * ratio).quick_root()
+    }
+
+    /// Relative standard uncertainty of the ratio of viscosities at two temperatures.
+    pub(crate) fn u_ratio_between(&self, one: Temperature, other: Temperature) -> f32 {
+        let away = (one.as_kelvin() - other.as_kelvin()).abs() / RATIO_SPAN;
+        self.u_viscosity_ratio * if away < 1.0 { away } else { 1.0 }
     }
 
     /// Relative standard uncertainty of the viscosity's ratio to its value at 25 C: what remains at another
@@ -245,12 +269,12 @@ impl StoredFluid {
 
     fn check_curves(&self) -> Result<(), Error> {
         const GAS: [[Limit; 2]; 2] = [
-            [("stored viscosity", 1e-7, 1e-2), ("stored viscosity slope", -10.0, 10.0)],
-            [("stored conduction group", 0.0, 10.0), ("stored conduction group slope", -1e5, 1e5)],
+            [("stored viscosity", 1e-7, 1e-2), ("stored viscosity slope", -5e-3, 5e-3)],
+            [("stored conduction group", 0.0, 10.0), ("stored conduction group slope", -10.0, 10.0)],
         ];
         const LIQUID: [[Limit; 2]; 2] = [
             [("stored viscosity", -10.0, 14.0), ("stored viscosity slope", -10.0, 10.0)],
-            [("stored density", 1.0, 1e5), ("stored density slope", -1e5, 1e5)],
+            [("stored density", 1.0, 1e5), ("stored density slope", -1e4, 1e4)],
         ];
         const PRESSURE: [Limit; 2] =
             [("stored pressure coefficient (1/Pa)", -1e-4, 1e-4), ("stored pressure coefficient slope", -1e-4, 1e-4)];
@@ -260,11 +284,39 @@ impl StoredFluid {
         };
         nodes_within(viscosity, &self.viscosity.nodes)?;
         nodes_within(extra, &self.extra.nodes)?;
+        // A curve stays positive between nodes whose slope, per segment, is no larger than their value.
+        if matches!(self.phase, Phase::Gas) {
+            no_steeper_than_high("stored viscosity slope", &self.viscosity.nodes)?;
+        } else {
+            no_steeper_than_high("stored density slope", &self.extra.nodes)?;
+        }
         for curve in self.viscosity_pressure.iter().chain(&self.density_pressure) {
             nodes_within(&PRESSURE, &curve.nodes)?;
         }
-        Ok(())
+        let [_, highest] = self.pressure_range;
+        series_within("viscosity over its value at no pressure", &self.viscosity_pressure, highest)?;
+        series_within("Z or density over its value at no pressure", &self.density_pressure, highest)
     }
+}
+
+fn no_steeper_than_high(field: &'static str, nodes: &[[f32; 2]]) -> Result<(), Error> {
+    nodes.iter().try_for_each(|[value, slope]| within(field, *slope, -value, *value).map(|_| ()))
+}
+
+/// Share by which a series in pressure may change its property up to the highest pressure, between nodes too.
+const SERIES_LIMIT: f32 = 0.5;
+
+fn series_within(field: &'static str, curves: &[Curve<COARSE_NODES>], highest: f32) -> Result<(), Error> {
+    for node in 0..COARSE_NODES {
+        let mut power = 1.0;
+        let mut change = 0.0;
+        for [value, slope] in curves.iter().filter_map(|curve| curve.nodes.get(node)) {
+            power *= highest;
+            change += (value.abs() + 0.3 * slope.abs()) * power;
+        }
+        within(field, change, 0.0, SERIES_LIMIT)?;
+    }
+    Ok(())
 }
 
 #[inline(never)] // as `all_within`

@@ -212,8 +212,16 @@ fn the_day_is_measured_within_its_uncertainty() -> Outcome {
     let summary: Value = serde_json::from_str(&out(&output))?;
     assert_eq!([&summary["readings"], &summary["good"], &summary["refused"]], [60, 58, 2]);
     let flows = Sheet::of(&bench.read("flows.csv")?);
-    let added =
-        ["volume_flow_L_min", "mass_flow_g_min", "standard_flow_L_min", "reynolds", "u_volume_flow_rel", "status"];
+    let added = [
+        "volume_flow_L_min",
+        "mass_flow_g_min",
+        "standard_flow_L_min",
+        "reynolds",
+        "u_volume_flow_rel",
+        "u_mass_flow_rel",
+        "u_standard_flow_rel",
+        "status",
+    ];
     assert_eq!(flows.header[7..], added);
     for (i, status) in flows.texts("status").into_iter().enumerate() {
         if status == "good" {

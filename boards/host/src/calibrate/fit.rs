@@ -154,7 +154,7 @@ fn common_effects(samples: &[Sample], cause: Cause, u_viscosity: f64, a: f64, b:
         Cause::Density => of_sources(sample, &[Source::LinePressure, Source::RelativeHumidity]),
         Cause::Temperature => of_sources(sample, &[Source::Temperature]),
         Cause::PressureDrop | Cause::PressureDropZero => of_sources(sample, &[Source::PressureDrop]),
-        Cause::Geometry => 0.0,
+        Cause::Geometry | Cause::Moisture => 0.0,
     };
     samples.iter().map(effect).collect()
 }
@@ -347,7 +347,7 @@ fn largest_u(samples: &[Sample], cause: Cause, u_viscosity: f64) -> Option<f64> 
         Cause::Density => of(Source::LinePressure, |s| s.line_pressure),
         Cause::Temperature => of(Source::Temperature, |_| 1.0),
         Cause::PressureDropZero => of(Source::PressureDrop, |_| 1.0),
-        Cause::Geometry => None,
+        Cause::Geometry | Cause::Moisture => None,
     }
 }
 

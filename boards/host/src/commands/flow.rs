@@ -245,6 +245,8 @@ impl Results {
             format!("standard_flow_{}", flow_unit.name()),
             "reynolds".into(),
             "u_volume_flow_rel".into(),
+            "u_mass_flow_rel".into(),
+            "u_standard_flow_rel".into(),
             "status".into(),
         ];
         let headers: Vec<&str> = table.columns().iter().map(|column| column.header.as_str()).collect();
@@ -287,6 +289,8 @@ impl Results {
         self.push(flow.standard.map(volume));
         self.push((flow.reynolds > 0.0 || flow.mass.as_kilograms_per_second() == 0.0).then_some(flow.reynolds));
         self.push(Some(flow.uncertainty.combined()));
+        self.push(Some(flow.mass_uncertainty.combined()));
+        self.push(flow.standard.map(|_| flow.standard_uncertainty.combined()));
         self.push_text(&flow.status.to_string());
         let good = flow.status == Status::empty();
         self.summary.count(flow.status.to_string());
@@ -294,7 +298,7 @@ impl Results {
     }
 
     fn push_refusal(&mut self, refusal: Refusal) {
-        (0..5).for_each(|_| self.push(None));
+        (0..7).for_each(|_| self.push(None));
         self.push_text(&refusal.to_string());
         self.summary.count(refusal.to_string());
         self.summary.refused += 1;

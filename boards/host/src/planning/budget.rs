@@ -153,6 +153,7 @@ fn shared(part: &CommonPart, flow: &Flow) -> Source {
         Cause::Temperature => "thermometer of the bench",
         Cause::PressureDropZero => "pressure-drop zero of the bench",
         Cause::Geometry => "nominal geometry",
+        Cause::Moisture => "water in the air of the bench",
     };
     let u = f64::from(part.effect_a) + f64::from(part.effect_b_m) * f64::from(s.x);
     let rectangular = part.cause == Cause::Geometry;

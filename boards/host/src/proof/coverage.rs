@@ -125,7 +125,8 @@ struct Truth {
 impl Truth {
     fn new() -> Result<Self, String> {
         let rig = Rig::tubes("bundle", 100, [0.5, 100.0], 5e3).with_equal_bores();
-        let [full_flow, _] = rig.flow(NITROGEN.fluid(), STATE, rig.full_scale).map_err(|refused| refused.to_string())?;
+        let [full_flow, _] =
+            rig.flow(NITROGEN.fluid(), STATE, rig.full_scale).map_err(|refused| refused.to_string())?;
         let mut truth = Self { rig, uses: Vec::new(), full_flow };
         truth.uses = truth.at(&AT)?;
         Ok(truth)
@@ -294,9 +295,8 @@ pub fn markdown(rows: &[Row]) -> String {
         "| calibration | refused at first | stands | holds the truth at 3, 10, 30, 100 % of full scale | U at these |\n\
          |---|---|---|---|---|\n",
     );
-    let percent = |values: [f64; 4], digits: usize| {
-        values.map(|value| format!("{:.digits$}", 100.0 * value)).join(", ")
-    };
+    let percent =
+        |values: [f64; 4], digits: usize| values.map(|value| format!("{:.digits$}", 100.0 * value)).join(", ");
     for row in rows {
         writeln!(
             text,
