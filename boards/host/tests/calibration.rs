@@ -3,7 +3,7 @@
 
 use evenbore::calibration::Cause;
 use evenbore::double::{Conditions, Properties};
-use evenbore::fluid::{StoredFluid, catalogue::NITROGEN, catalogue::WATER};
+use evenbore::fluid::{StoredFluid, catalogue::AIR, catalogue::NITROGEN, catalogue::WATER};
 use evenbore::quantity::{AbsolutePressure, Length, PressureDrop, Temperature};
 use evenbore::reading::SensorUncertainty;
 use evenbore::reference::ReferenceConditions;
@@ -396,6 +396,30 @@ fn the_budget_adds_up() -> Outcome {
     let combined = top.type_a.hypot(top.common).hypot(top.sensors);
     assert_close(total(1.0), combined, 0.005, "budget at full scale");
     assert!(total(0.1) > total(1.0));
+    Ok(())
+}
+
+/// Moist air brings what its water does to viscosity into the calibration, where it stays, and into its use.
+#[test]
+fn moist_air_is_calibrated_and_judged_moist() -> Outcome {
+    let humid = Conditions::new(&made(), AIR.fluid(), T, P, Some(0.6))?;
+    let errors = Errors { flow: 1e-3, drop: 7e-4, flow_common: 1e-3, ..Errors::default() };
+    let mut run = run(&humid, &drops(12), &errors, &mut Noise(11));
+    run.points.iter_mut().for_each(|point| point.relative_humidity = Some(0.6));
+    let order = Order { sensors: SensorUncertainty::COMMON, ..order(AIR.fluid()) };
+    let verdict = calibrate(&run, &order)?;
+    let found = verdict.calibration;
+    let u = humid.u_viscosity_of_water();
+    let part = found.common.iter().find(|part| part.name == "moisture").ok_or("no moisture")?;
+    assert_close(part.u, u, 1e-6, "u of the water");
+    assert_close(part.effect_a, -u * found.a, 1e-3, "its effect on A");
+    assert!(verdict.record.ok_or("no record")?.quality.common.iter().any(|part| part.cause == Cause::Moisture));
+    assert_close(found.state.relative_humidity.ok_or("no humidity")?, 0.6, 1e-12, "mean humidity");
+    assert!(["humidity", "viscosity of moist air"].iter().all(|name| found.budget.iter().any(|row| row.source == *name)));
+    let rows = found.budget.iter().filter(|row| row.at == 1.0);
+    let total = rows.map(|row| row.contribution * row.contribution).sum::<f64>().sqrt();
+    let top = found.uncertainty.last().ok_or("no rows")?;
+    assert_close(total, top.type_a.hypot(top.common).hypot(top.sensors), 0.005, "budget on moist air");
     Ok(())
 }
 

@@ -148,13 +148,14 @@ fn common_effects(samples: &[Sample], cause: Cause, u_viscosity: f64, a: f64, b:
     };
     let effect = |sample: &Sample| match cause {
         Cause::Viscosity => u_viscosity * sample.viscosity_slope(a),
+        Cause::Moisture => sample.u_viscosity_of_water * sample.viscosity_slope(a),
         Cause::ReferenceFlow => {
             of_sources(sample, &[Source::ReferenceFlow, Source::ReferenceTemperature, Source::ReferencePressure])
         }
         Cause::Density => of_sources(sample, &[Source::LinePressure, Source::RelativeHumidity]),
         Cause::Temperature => of_sources(sample, &[Source::Temperature]),
         Cause::PressureDrop | Cause::PressureDropZero => of_sources(sample, &[Source::PressureDrop]),
-        Cause::Geometry | Cause::Moisture => 0.0,
+        Cause::Geometry => 0.0,
     };
     samples.iter().map(effect).collect()
 }
@@ -287,7 +288,14 @@ fn mean_y(samples: &[Sample]) -> Result<f64> {
 /// The common parts, each carried through the fit: the estimator is linear, so its answer to the effects of one
 /// standard uncertainty is the shift of A and B.
 fn shifts(problem: &Problem<'_>, u_viscosity: f64, sigmas: &[f64], a: f64, b: f64) -> Result<Vec<CommonShift>> {
-    let causes = [Cause::ReferenceFlow, Cause::Viscosity, Cause::PressureDrop, Cause::Density, Cause::Temperature];
+    let causes = [
+        Cause::ReferenceFlow,
+        Cause::Viscosity,
+        Cause::PressureDrop,
+        Cause::Density,
+        Cause::Temperature,
+        Cause::Moisture,
+    ];
     let zero = problem.zero_effects(a, b);
     let mut shifts = Vec::new();
     for cause in causes {
@@ -347,7 +355,8 @@ fn largest_u(samples: &[Sample], cause: Cause, u_viscosity: f64) -> Option<f64> 
         Cause::Density => of(Source::LinePressure, |s| s.line_pressure),
         Cause::Temperature => of(Source::Temperature, |_| 1.0),
         Cause::PressureDropZero => of(Source::PressureDrop, |_| 1.0),
-        Cause::Geometry | Cause::Moisture => None,
+        Cause::Moisture => samples.iter().map(|s| s.u_viscosity_of_water).reduce(f64::max),
+        Cause::Geometry => None,
     }
 }
 

@@ -69,7 +69,8 @@ pub struct Calibration {
 /// A named common part and its effect on the coefficients.
 #[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct CommonEffect {
-    /// What is shared: `reference-flow`, `viscosity`, `pressure-drop`, `density`, `temperature`, `pressure-drop-zero`.
+    /// What is shared: `reference-flow`, `viscosity`, `pressure-drop`, `density`, `temperature`, `moisture`,
+    /// `pressure-drop-zero`.
     pub name: String,
     /// Relative standard uncertainty of the cause (kelvin for temperature, pascal for a zero).
     pub u: f64,

@@ -60,7 +60,8 @@ pub fn calibrate(points: &Points, order: &Order<'_>) -> Result<Verdict, Problem>
     let used = used(&all, order);
     check_spread(points, &used)?;
     let general = |error: crate::statistics::StatisticsError| Problem::new(&points.file, error.to_string());
-    let u_viscosity = f64::from(order.fluid.u_viscosity());
+    let mean_temperature = Temperature::from_kelvin(mean(&used, |s| s.temperature) as f32);
+    let u_viscosity = f64::from(order.fluid.u_viscosity_at(mean_temperature));
     let solution = best_fit(&used, nominal(order), u_viscosity).map_err(general)?;
     let run = Run {
         samples: &used,
