@@ -415,7 +415,9 @@ fn moist_air_is_calibrated_and_judged_moist() -> Outcome {
     assert_close(part.effect_a, -u * found.a, 1e-3, "its effect on A");
     assert!(verdict.record.ok_or("no record")?.quality.common.iter().any(|part| part.cause == Cause::Moisture));
     assert_close(found.state.relative_humidity.ok_or("no humidity")?, 0.6, 1e-12, "mean humidity");
-    assert!(["humidity", "viscosity of moist air"].iter().all(|name| found.budget.iter().any(|row| row.source == *name)));
+    assert!(
+        ["humidity", "viscosity of moist air"].iter().all(|name| found.budget.iter().any(|row| row.source == *name))
+    );
     let rows = found.budget.iter().filter(|row| row.at == 1.0);
     let total = rows.map(|row| row.contribution * row.contribution).sum::<f64>().sqrt();
     let top = found.uncertainty.last().ok_or("no rows")?;

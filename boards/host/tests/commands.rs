@@ -733,3 +733,16 @@ fn results_of_a_run_belong_together() -> Outcome {
     assert_eq!(bench.read("out/record.toml.earlier")?, record);
     Ok(())
 }
+
+#[test]
+fn moist_air_is_shown_with_what_its_water_adds() -> Outcome {
+    let bench = Bench::new()?;
+    let u = |more: &str| -> Result<f64, Box<dyn Error>> {
+        let shown: Value = serde_json::from_str(&out(&bench.run(&format!("fluid show air --json {more}"))?))?;
+        shown["u_viscosity_rel"].as_f64().ok_or_else(|| "no uncertainty".into())
+    };
+    assert!(u("--temperature 40C --relative-humidity 90pct")? > 2.0 * u("--temperature 40C")?);
+    let refused = bench.run("fluid show air --temperature 80C --relative-humidity 50pct")?;
+    assert_holds(&err(&refused), &["0 to 100 %", "-20 to 60 C"]);
+    Ok(())
+}
