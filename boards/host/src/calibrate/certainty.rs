@@ -8,7 +8,7 @@ use evenbore::calibration::Cause;
 use evenbore::double::Conditions;
 use evenbore::flow::Flow;
 use evenbore::quantity::{AbsolutePressure, PressureDrop, RelativeHumidity, Temperature};
-use evenbore::{Meter, Reading, Record};
+use evenbore::{Reading, Record};
 
 /// Rows over the range.
 const ROWS: usize = 13;

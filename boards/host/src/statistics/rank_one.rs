@@ -35,6 +35,11 @@ impl PairCovariance {
         Self([[aa + a * a, ab + a * b], [ba + a * b, bb + b * b]])
     }
 
+    /// Multiplies every element, for instance by s² when the scatter tells the uncertainty.
+    pub fn scaled(self, factor: f64) -> Self {
+        Self(self.0.map(|row| row.map(|element| element * factor)))
+    }
+
     /// Standard uncertainties of the two parameters.
     pub fn standard_uncertainties(&self) -> [f64; 2] {
         [self.0[0][0].sqrt(), self.0[1][1].sqrt()]
