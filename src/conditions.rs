@@ -11,6 +11,7 @@ use crate::uncertainty::{Sensitivities, sensitivities};
 
 /// The slow half of the walk: one temperature, one line pressure, one humidity.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct Conditions {
     pub(crate) state: State<f32>,
     /// Reynolds number over x, 1/m.

@@ -11,6 +11,7 @@ use crate::status::Refusal;
 
 /// Fluid properties at one temperature.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct Properties {
     at: PropertiesAt<f64>,
 }
@@ -40,12 +41,14 @@ impl Properties {
 
 /// The law at one temperature and line pressure, in double precision.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct Conditions {
     state: State<f64>,
 }
 
 /// What a flow and its pressure drop contribute to a fit of `Y = A u + B v`.
 #[derive(Debug, Clone, Copy, PartialEq)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct Columns {
     /// x = mdot/mu_m, m.
     pub x: f64,
@@ -59,6 +62,7 @@ pub struct Columns {
 
 /// A flow in double precision.
 #[derive(Debug, Clone, Copy, PartialEq)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct Flow {
     /// x = mdot/mu_m, m.
     pub x: f64,

@@ -40,6 +40,7 @@ use crate::uncertainty::{Sensitivities, Uncertainty, common_part, fit_part, sens
 /// # Ok::<(), Box<dyn core::error::Error>>(())
 /// ```
 #[derive(Debug, Clone)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct Meter<'a> {
     element: Element,
     channels: Channels<f32>,
@@ -227,10 +228,11 @@ impl<'a> Meter<'a> {
         let (t, p) = (temperature.as_kelvin(), line_pressure.as_pascals());
         let humidity = humidity.map(RelativeHumidity::as_fraction);
         let state = State::new(&self.channels, self.fluid, t, p, humidity)?;
+        let dry = self.standard_volume;
         Ok(Conditions {
             state,
             reynolds_per_metre: self.channels.reynolds,
-            standard_volume: self.standard_volume * state.moisture.dry_share,
+            standard_volume: if humidity.is_some() { dry * state.moisture.dry_share } else { dry },
             x_calibrated: self.quality.x_max_m,
             standing: self.standing,
         })

@@ -11,6 +11,7 @@
 //! Pressure drops that are negative, below 1e-30 Pa or beyond the curve are computed by [`Conditions::sample`].
 
 use crate::conditions::{Conditions, Sample};
+use crate::math::{upper, upper_signed};
 use crate::quantity::{MassFlow, PressureDrop, VolumeFlow};
 use crate::status::{Refusal, Status};
 
@@ -64,6 +65,7 @@ pub struct Quick {
 
 /// A curve of volume flow over pressure drop, valid at one temperature, line pressure and humidity.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct FlowCurve {
     conditions: Conditions,
     /// g over its power of two, by falling power of the place in the segment.
@@ -93,16 +95,6 @@ pub struct FlowCurve {
 /// Stored exponent e and mantissa m (top bit set) of a positive normal number `m 2^(e - 158)`.
 const fn parts(bits: u32) -> (u32, u32) {
     (bits >> 23, (bits << 8) | 0x8000_0000)
-}
-
-/// Upper half of a product.
-const fn upper(a: u32, b: u32) -> u32 {
-    ((a as u64 * b as u64) >> 32) as u32
-}
-
-/// Upper half of a signed product.
-const fn upper_signed(a: i32, b: i32) -> i32 {
-    ((a as i64 * b as i64) >> 32) as i32
 }
 
 /// Bits of `product 2^exponent`, rounded to nearest; the caller sees to it that the result is normal.

@@ -9,6 +9,7 @@ use crate::status::Refusal;
 
 /// What flows, and the law for it, at one temperature and line pressure.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub(crate) struct State<F> {
     pub law: Prepared<F>,
     pub moisture: Moisture<F>,

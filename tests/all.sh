@@ -8,6 +8,11 @@ export RUSTDOCFLAGS="-D warnings"
 
 # Targets without an operating system on which the library must build.
 BARE_TARGETS=(thumbv6m-none-eabi thumbv7em-none-eabihf)
+# Targets of the emulated machines (boards/emulated).
+MACHINE_TARGETS=(thumbv6m-none-eabi thumbv7m-none-eabi thumbv7em-none-eabihf thumbv8m.main-none-eabihf
+    riscv32imac-unknown-none-elf)
+# Crates of real boards, which are built and not run.
+REAL_BOARDS=(rp-pico blackpill)
 # Feature sets of the library: none, each, all.
 FEATURE_SETS=("" defmt hal link serde store "defmt hal link serde store")
 
@@ -34,7 +39,9 @@ need_command() {
 stage "what is needed"
 command -v cargo > /dev/null || die "cargo is missing: install Rust with rustup"
 command -v rustup > /dev/null || die "rustup is missing: it brings the bare-metal targets"
-for target in "${BARE_TARGETS[@]}"; do need_target "$target"; done
+for target in "${BARE_TARGETS[@]}" "${MACHINE_TARGETS[@]}"; do need_target "$target"; done
+need_command qemu-system-arm qemu-system-arm
+need_command qemu-system-riscv32 qemu-system-misc
 need_command python3 python3-venv
 
 stage "format"
@@ -55,13 +62,21 @@ for target in "${BARE_TARGETS[@]}"; do
     done
 done
 
-stage "tests, documentation examples and example programs"
-cargo test --locked --workspace --no-fail-fast
+stage "tests, documentation examples and example programs; the emulated machines with them"
+EVENBORE_BOARDS=1 cargo test --locked --workspace --no-fail-fast
 cargo test --quiet --locked --package evenbore --features defmt,hal,link,serde,store
 for example in examples/*.rs; do
     name="$(basename "$example" .rs)"
     echo "example $name"
     cargo run --quiet --locked --features link --example "$name" > /dev/null < /dev/null
+done
+
+stage "programs of boards: format, and the real ones built"
+for board in emulated emulated/decoder "${REAL_BOARDS[@]}"; do
+    (cd "boards/$board" && cargo fmt --check)
+done
+for board in "${REAL_BOARDS[@]}"; do
+    (cd "boards/$board" && cargo build --quiet --release --locked)
 done
 
 stage "documentation"

@@ -14,7 +14,9 @@ mod machine;
 #[allow(dead_code)] // the machines use more of it
 mod readings;
 
-use machine::{Machine, blessing, folder, machines, requested};
+use evenbore::Reading;
+use evenbore::quantity::{AbsolutePressure, PressureDrop, Temperature};
+use machine::{Machine, blessing, decoded, folder, machines, requested};
 use std::collections::BTreeSet;
 use std::fs;
 
@@ -87,6 +89,38 @@ fn no_machine_can_panic() {
     }
 }
 
+/// What the program `log` says, in words, is what the desktop computes.
+#[test]
+fn every_machine_logs_a_flow_in_words() {
+    let record = readings::record().unwrap();
+    let meter = record.meter().unwrap();
+    let reading = Reading::new(
+        PressureDrop::from_pascals(1500.0),
+        Temperature::from_kelvin(296.55),
+        AbsolutePressure::from_pascals(1.2e5),
+    );
+    let flow = meter.flow(&reading).unwrap();
+    let endless = Reading { pressure_drop: PressureDrop::from_pascals(f32::INFINITY), ..reading };
+    let refusal = meter.flow(&endless).unwrap_err();
+    let expected = [
+        "info serial EB-0042, Single".to_owned(),
+        format!(
+            "info flow Flow {{ sample: Sample {{ volume: VolumeFlow({}),",
+            flow.volume.as_cubic_metres_per_second()
+        ),
+        format!("warn no flow: Refusal({:b})", refusal.bits()),
+    ];
+    for machine in requested() {
+        let (image, frames) = machine.log();
+        let text = decoded(&image, &frames);
+        assert_eq!(text.lines().count(), expected.len(), "{}: {text}", machine.name);
+        for (line, expected) in text.lines().zip(&expected) {
+            assert!(line.starts_with(expected), "{}: {line}, expected {expected}", machine.name);
+        }
+        assert!(text.contains(&format!("uncertainty: Uncertainty {{ fit: {},", flow.uncertainty.fit)), "{text}");
+    }
+}
+
 #[test]
 fn cost_stays_within_its_budget() {
     let found: Vec<(Machine, cost::Costs)> = requested()
@@ -102,10 +136,34 @@ fn cost_stays_within_its_budget() {
     let (table, path) = (cost::table(&found), folder().join("cost.md"));
     if blessing() {
         fs::write(&path, &table).unwrap();
+        quote(&cost::summary(&table));
     }
     let complaints = cost::complaints(&found, &fs::read_to_string(folder().join("budget.txt")).unwrap());
     assert!(complaints.is_empty(), "boards/emulated/budget.txt:\n{}", complaints.join("\n"));
     let written = fs::read_to_string(&path).unwrap_or_default();
     let stale = "boards/emulated/cost.md is not what was counted; EVENBORE_BLESS=1 cargo test --test boards writes it";
     assert_eq!(first_difference(&table, &written), None, "left: counted, right: cost.md: {stale}");
+}
+
+/// Puts a table into the README in place of the one that starts alike.
+fn quote(table: &str) {
+    let path = folder().join("../../README.md");
+    let readme = fs::read_to_string(&path).unwrap();
+    let start = readme.find("| instructions | M4F |").expect("README.md has a table of costs");
+    let end = readme[start..].find("\n\n").map_or(readme.len(), |n| start + n + 1);
+    fs::write(&path, [&readme[..start], table, &readme[end..]].concat()).unwrap();
+}
+
+/// The README quotes three machines of `boards/emulated/cost.md`.
+#[test]
+fn the_readme_quotes_what_was_counted() {
+    if blessing() {
+        return;
+    }
+    let root = folder().join("../..");
+    let readme = fs::read_to_string(root.join("README.md")).unwrap();
+    let counted = fs::read_to_string(folder().join("cost.md")).unwrap();
+    for line in cost::summary(&counted).lines() {
+        assert!(readme.contains(line), "README.md lacks what cost.md says:\n{}", cost::summary(&counted));
+    }
 }

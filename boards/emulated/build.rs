@@ -16,4 +16,7 @@ fn main() {
     }
     println!("cargo::rustc-link-arg-bins=-Tlink.x");
     println!("cargo::rustc-link-arg-bins=--nmagic");
+    if env::var_os("CARGO_FEATURE_LOG").is_some() {
+        println!("cargo::rustc-link-arg-bins=-Tdefmt.x");
+    }
 }

@@ -7,6 +7,7 @@ use crate::quantity::{AbsolutePressure, Temperature};
 
 /// What a table is built from, beside its two property functions.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct Frame<'a> {
     /// Name, 1 to 24 printable ASCII characters.
     pub name: &'a str,
@@ -133,6 +134,7 @@ fn empty(
 
 /// A row of a user's table.
 #[derive(Debug, Clone, Copy, PartialEq)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct Row {
     /// Temperature, K.
     pub temperature: f64,

@@ -24,6 +24,7 @@ const U_AWAY: f32 = 0.01;
 
 /// What a data sheet says of an oil.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct OilData<'a> {
     /// Name, 1 to 24 printable ASCII characters.
     pub name: &'a str,

@@ -28,6 +28,7 @@ const MOST_WATER: f64 = 0.25;
 
 /// What a share of water vapour does to dry air.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub(crate) struct Moisture<F> {
     /// Mole fraction of water vapour.
     pub water: F,

@@ -10,6 +10,7 @@ pub(crate) const MOLAR_GAS_CONSTANT: f64 = 8.314_462_618_153_24;
 
 /// Properties at one temperature, of a dry or pure fluid.
 #[derive(Debug, Clone, Copy)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub(crate) struct PropertiesAt<F> {
     /// Viscosity towards zero pressure, Pa s.
     pub mu0: F,
@@ -86,9 +87,15 @@ impl<F: Real> PropertiesAt<F> {
 
     /// Density at absolute pressure `p`, kg/m3.
     pub fn density(&self, p: F) -> F {
+        let [over, under] = self.density_ratio(p);
+        if self.gas { over / under } else { over }
+    }
+
+    /// Density as numerator (kg/m3) and denominator, which is 1 for a liquid.
+    pub fn density_ratio(&self, p: F) -> [F; 2] {
         let [b, c, d] = self.z;
         let series = F::of(1.0) + p * (b + p * (c + p * d));
-        if self.gas { p * self.base / series } else { self.base * series }
+        if self.gas { [p * self.base, series] } else { [self.base * series, F::of(1.0)] }
     }
 }
 

@@ -118,51 +118,36 @@ impl<const NODES: usize> Curve<NODES> {
     /// Number of segments.
     pub(crate) const SEGMENTS: usize = NODES - 1;
 
-    /// The place at `share` of the way from the first node to the last; the end segments extend beyond the curve.
+    /// The place at `share` of the way from the first node to the last, 0 to 1.
     pub(crate) fn place<F: Real>(share: F) -> Place<F> {
-        let position = share * F::of(Self::SEGMENTS as f64);
-        let segment = position.index().min(Self::SEGMENTS.saturating_sub(1));
-        Place::new(segment, position - F::of(segment as f64))
+        let (segment, along) = F::along(share, Self::SEGMENTS as u32);
+        Place { segment, along }
     }
 
-    /// Value at a place: `y0 + w (y1 - y0) + w0 m0 + w1 m1`, whose small terms lose no digits.
+    /// Value at a place.
     pub(crate) fn value<F: Real>(&self, place: &Place<F>) -> F {
-        let ([y0, rise, m0, m1], [w, w0, w1]) = (self.segment(place), place.weights);
-        y0 + (rise * w + (m0 * w0 + m1 * w1))
+        F::cubic(self.ends(place), &place.along)
     }
 
     /// Slope at a place, per segment: between the nodes' own, which is enough for an uncertainty.
     pub(crate) fn slope<F: Real>(&self, place: &Place<F>) -> F {
-        let [_, _, m0, m1] = self.segment(place);
-        m0 + place.t * (m1 - m0)
+        F::slope(self.ends(place), &place.along)
     }
 
-    /// Start, rise and end slopes of a place's segment.
-    fn segment<F: Real>(&self, place: &Place<F>) -> [F; 4] {
-        let (Some([y0, m0]), Some([y1, m1])) = (self.nodes.get(place.segment), self.nodes.get(place.segment + 1))
-        else {
-            return [F::of(0.0); 4]; // not reached: a place's segment is at most NODES - 2
-        };
-        [F::stored(*y0), F::stored(*y1) - F::stored(*y0), F::stored(*m0), F::stored(*m1)]
+    /// Values and slopes at the ends of a place's segment.
+    fn ends<F: Real>(&self, place: &Place<F>) -> [&[f32; 2]; 2] {
+        match (self.nodes.get(place.segment), self.nodes.get(place.segment + 1)) {
+            (Some(start), Some(end)) => [start, end],
+            _ => [&[0.0; 2]; 2], // not reached: a place's segment is at most NODES - 2
+        }
     }
 }
 
-/// A place on every curve of the same number of nodes, with what cubic Hermite interpolation weighs there.
+/// A place on every curve of the same number of nodes.
 #[derive(Debug, Clone, Copy)]
-pub(crate) struct Place<F> {
+pub(crate) struct Place<F: Real> {
     segment: usize,
-    /// 0 to 1 along the segment.
-    t: F,
-    /// Of the segment's rise, of the slope at its start, of the slope at its end.
-    weights: [F; 3],
-}
-
-impl<F: Real> Place<F> {
-    fn new(segment: usize, t: F) -> Self {
-        let left = F::of(1.0) - t;
-        let (tt, product) = (t * t, t * left);
-        Self { segment, t, weights: [tt + F::of(2.0) * (tt * left), product * left, -(product * t)] }
-    }
+    along: F::Along,
 }
 
 /// A fluid as an instrument stores it.
@@ -326,6 +311,7 @@ fn nodes_within(limits: &[Limit; 2], nodes: &[[f32; 2]]) -> Result<(), Error> {
 
 /// A fluid of the catalogue: its stored table and where its numbers come from.
 #[derive(Debug)]
+#[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct CatalogueEntry {
     pub(crate) fluid: StoredFluid,
     pub(crate) viscosity_source: &'static str,

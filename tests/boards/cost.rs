@@ -45,13 +45,18 @@ impl Costs {
     }
 
     /// What the budget limits, in the order of its file.
-    fn limited(&self) -> [(&'static str, u32); 9] {
+    fn limited(&self) -> [(&'static str, u32); 11] {
         [
+            ("curve-sample", self.worst("curve-sample")),
+            ("curve", self.worst("curve")),
             ("sample", self.worst("sample")),
             ("full", self.worst("full")),
             ("flow", self.worst("flow")),
             ("decode", self.worst("decode")),
-            ("stack", ["sample", "full", "flow"].map(|work| self.work[work].stack).into_iter().max().unwrap()),
+            (
+                "stack",
+                ["curve-sample", "sample", "full", "flow"].map(|work| self.work[work].stack).into_iter().max().unwrap(),
+            ),
             ("decode-stack", self.work["decode"].stack),
             ("flash", self.core.flash),
             ("record-flash", self.record.flash),
@@ -106,6 +111,36 @@ pub fn table(found: &[(Machine, Costs)]) -> String {
     text
 }
 
+/// What the README quotes of a table of costs: three machines, the mean of each quantity.
+pub fn summary(table: &str) -> String {
+    const MACHINES: [(&str, &str); 3] = [("mps2-an386", "M4F"), ("mps2-an385", "M3"), ("microbit", "M0")];
+    const ROWS: [(&str, &str); 9] = [
+        ("simple model by hand (`powf`, no checks)", "simple model by hand, `powf`"),
+        ("sample by a prepared curve", "a pressure drop by a prepared curve"),
+        ("sample at prepared conditions", "a pressure drop at prepared conditions"),
+        ("conditions and sample", "new conditions, then a pressure drop"),
+        ("whole walk with uncertainty", "all of it, with uncertainty"),
+        ("a curve prepared", "a curve prepared"),
+        ("flash, B: walk and one fluid", "flash, bytes: all of it, one fluid"),
+        ("flash, B: record and walk", "flash, bytes: and a record decoded"),
+        ("stack, B: whole walk with uncertainty", "stack, bytes: all of it"),
+    ];
+    let cells = |row: &str| -> Vec<String> {
+        let start = format!("| {row} |");
+        let line = table.lines().find(|line| line.starts_with(&start)).unwrap_or_else(|| panic!("no row {row}"));
+        line[start.len()..].split('|').map(|cell| cell.split(" (").next().unwrap_or("").trim().to_owned()).collect()
+    };
+    let head = table.lines().find(|line| line.starts_with("| |")).expect("a head");
+    let names: Vec<&str> = head.split('|').skip(2).map(str::trim).collect();
+    let place = |machine: &str| names.iter().position(|name| *name == machine).expect("a machine of the table");
+    let mut text = format!("| instructions | {} |\n|---|---|---|---|\n", MACHINES.map(|(_, name)| name).join(" | "));
+    for (row, words) in ROWS {
+        let cells = cells(row);
+        text += &format!("| {words} | {} |\n", MACHINES.map(|(machine, _)| cells[place(machine)].clone()).join(" | "));
+    }
+    text
+}
+
 const HEAD: &str = "\
 # What evenbore costs
 
@@ -116,10 +151,12 @@ instructions, not cycles. Flash is `.text` and `.rodata` over an image that does
 ";
 
 /// Rows of the table and the names `cost` prints.
-const WORK: [(&str, &str); 5] = [
+const WORK: [(&str, &str); 7] = [
     ("simple model by hand (`powf`, no checks)", "baseline"),
+    ("sample by a prepared curve", "curve-sample"),
     ("sample at prepared conditions", "sample"),
     ("conditions and sample", "full"),
     ("whole walk with uncertainty", "flow"),
+    ("a curve prepared", "curve"),
     ("record decoded and checked", "decode"),
 ];

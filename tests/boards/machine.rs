@@ -95,10 +95,13 @@ impl Machine {
     /// # Errors
     /// What cargo wrote.
     pub fn build_at(&self, level: &str, arguments: &[&str]) -> Result<(), String> {
-        let target = folder().join(if level == "3" { "target".to_owned() } else { format!("target/{level}") });
+        self.build_in(if level == "3" { "target".to_owned() } else { format!("target/{level}") }, level, arguments)
+    }
+
+    fn build_in(&self, target: String, level: &str, arguments: &[&str]) -> Result<(), String> {
         let output = Command::new(env::var_os("CARGO").unwrap_or("cargo".into()))
             .current_dir(folder()) // or cargo ignores the folder's config
-            .env("CARGO_TARGET_DIR", target)
+            .env("CARGO_TARGET_DIR", folder().join(target))
             .env("CARGO_PROFILE_RELEASE_OPT_LEVEL", level)
             .env_remove("RUSTFLAGS")
             .env_remove("CARGO_ENCODED_RUSTFLAGS")
@@ -117,10 +120,24 @@ impl Machine {
     /// Builds the programs, runs one and returns what it prints.
     pub fn run(&self, program: &str) -> String {
         self.build(&[]).unwrap_or_else(|message| panic!("{}: {message}", self.name));
+        String::from_utf8(self.start(&self.image(program))).unwrap()
+    }
+
+    /// Builds and runs the program that logs; returns its image and its frames.
+    pub fn log(&self) -> (PathBuf, Vec<u8>) {
+        // Its library is another, so its images lie apart.
+        let built = self.build_in("target/log".to_owned(), "3", &["--bin", "log", "--features", "log"]);
+        built.unwrap_or_else(|message| panic!("{}: {message}", self.name));
+        let image = folder().join("target/log").join(&self.target).join("release/log");
+        let frames = self.start(&image);
+        (image, frames)
+    }
+
+    fn start(&self, image: &Path) -> Vec<u8> {
         let (emulator, arguments) = self.runner.split_first().unwrap();
         let mut child = Command::new(emulator)
             .args(arguments)
-            .arg(self.image(program))
+            .arg(image)
             .stdin(Stdio::null())
             .stdout(Stdio::piped())
             .spawn()
@@ -131,14 +148,32 @@ impl Machine {
                 Some(status) => break status,
                 None if start.elapsed() > PATIENCE => {
                     child.kill().unwrap();
-                    panic!("{}: {program} hangs", self.name);
+                    panic!("{}: {} hangs", self.name, image.display());
                 }
                 None => std::thread::sleep(Duration::from_millis(20)),
             }
         };
-        let mut text = String::new();
-        child.stdout.take().unwrap().read_to_string(&mut text).unwrap();
-        assert!(status.success(), "{}: {program}: {status}\n{text}", self.name);
-        text
+        let mut printed = Vec::new();
+        child.stdout.take().unwrap().read_to_end(&mut printed).unwrap();
+        let text = String::from_utf8_lossy(&printed);
+        assert!(status.success(), "{}: {}: {status}\n{text}", self.name, image.display());
+        printed
     }
+}
+
+/// The text of frames that an image logged, by the decoder in `boards/emulated/decoder`.
+pub fn decoded(image: &Path, frames: &[u8]) -> String {
+    let mut child = Command::new(env::var_os("CARGO").unwrap_or("cargo".into()))
+        .current_dir(folder().join("decoder"))
+        .env("CARGO_TARGET_DIR", folder().join("target/decoder"))
+        .args(["run", "--quiet", "--locked", "--"])
+        .arg(image)
+        .stdin(Stdio::piped())
+        .stdout(Stdio::piped())
+        .spawn()
+        .expect("cargo");
+    child.stdin.take().unwrap().write_all(frames).unwrap();
+    let output = child.wait_with_output().unwrap();
+    assert!(output.status.success(), "the decoder of {}: {}", image.display(), output.status);
+    String::from_utf8(output.stdout).unwrap()
 }

@@ -36,8 +36,8 @@ pub const UNIT_FACTOR: f64 = 1.2e-7;
 pub const QUICK_ROOT: f64 = 2e-6;
 
 /// The series of ln(p1/p2) down to half the line pressure, relative, as the law's documentation states.
-/// Measured: 1.64e-6.
-pub const LOG_RATIO: f64 = 2e-6;
+/// Measured: 1.9e-7.
+pub const LOG_RATIO: f64 = 3e-7;
 
 /// Newton's two or three steps on x against the converged flow, relative. Measured: 5.7e-9.
 pub const Q_UPDATES: f64 = 1e-8;

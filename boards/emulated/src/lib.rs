@@ -5,6 +5,9 @@
 
 pub mod machine; // start, exit, text out
 
+#[cfg(feature = "log")]
+pub mod logger; // defmt's frames
+
 pub mod line; // text without core::fmt
 
 pub mod counter; // instructions and stack

@@ -1,10 +1,11 @@
-//! Ten thousand seeded readings and the digest of every bit that comes out of them.
+//! Twelve thousand seeded readings and the digest of every bit that comes out of them.
 //!
 //! Compiled for the machines and for the desktop (`tests/boards.rs`): the digests must be equal.
 
 use evenbore::calibration::{Cause, CommonPart, Quality};
 use evenbore::error::Error;
 use evenbore::flow::Flow;
+use evenbore::flow_curve::Arithmetic;
 use evenbore::fluid::catalogue::{self, CatalogueEntry};
 use evenbore::fluid::mineral_oil::{OilData, mineral_oil};
 use evenbore::fluid::{Phase, StoredFluid};
@@ -27,13 +28,15 @@ enum Kind {
     Plates,
     /// Unknown channels, calibrated on the fluid itself.
     Other,
+    /// Round tubes calibrated on nitrogen, by the fast arithmetic.
+    Curve,
 }
 
 /// Fluids by kind of element; where there is no entry, an oil is built.
 type Row = (Kind, Option<&'static CatalogueEntry>);
 
 #[rustfmt::skip]
-static SECTIONS: [Row; 20] = [
+static SECTIONS: [Row; 24] = [
     (Kind::Tubes, Some(&catalogue::NITROGEN)),
     (Kind::Tubes, Some(&catalogue::AIR)),
     (Kind::Tubes, Some(&catalogue::HELIUM)),
@@ -54,6 +57,10 @@ static SECTIONS: [Row; 20] = [
     (Kind::Other, Some(&catalogue::OXYGEN)),
     (Kind::Other, Some(&catalogue::KRYPTON)),
     (Kind::Other, None),
+    (Kind::Curve, Some(&catalogue::NITROGEN)),
+    (Kind::Curve, Some(&catalogue::AIR)),
+    (Kind::Curve, Some(&catalogue::HELIUM)),
+    (Kind::Curve, Some(&catalogue::WATER)),
 ];
 
 /// What came out of a section.
@@ -89,6 +96,14 @@ pub fn run(mut report: impl FnMut(&Section<'_>)) -> Result<u64, Error> {
                 let record = write_and_read(&record()?, &mut digest)?;
                 let meter = record.meter()?.with_fluid(&fluid)?;
                 section.element = "round-tubes";
+                readings(&meter, &mut seed, &mut digest, &mut section);
+            }
+            Kind::Curve => {
+                let mut record = record()?;
+                record.arithmetic = Arithmetic::Curve;
+                let record = write_and_read(&record, &mut digest)?;
+                let meter = record.meter()?.with_fluid(&fluid)?;
+                section.element = "round-tubes-by-curve";
                 readings(&meter, &mut seed, &mut digest, &mut section);
             }
             Kind::Plates => {

@@ -18,6 +18,8 @@ pub mod resources; // elements and fluids from their files
 
 pub mod virtual_element; // an element computed along its channels, without the law
 
+pub mod virtual_bench; // a scenario into readings with the truth beside them
+
 pub mod calibrate; // points into coefficients, findings and a verdict
 
 pub mod proof; // the claims of the README, measured

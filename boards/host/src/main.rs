@@ -3,7 +3,7 @@
 mod commands;
 
 use clap::{Parser, Subcommand};
-use commands::{Ended, calibrate, flow, fluid, plan, predict, size};
+use commands::{Ended, calibrate, flow, fluid, plan, predict, simulate, size};
 use std::process::ExitCode;
 
 /// Calibrates laminar flow elements and computes viscosity-compensated flow from their readings.
@@ -73,6 +73,17 @@ enum Command {
         after_long_help = "Example:\n  evenbore predict --record EB-0042/record.toml --fluid helium --temperature 40C --out there"
     )]
     Predict(predict::Arguments),
+    /// Make readings with the true flow beside them, by a virtual element and virtual sensors
+    ///
+    /// The flow is that of a numerical solution along the channels, which shares no formula with the instrument's law.
+    /// A scenario names an element, its sensors with their errors, segments in which pressure drop or flow, temperature
+    /// and line pressure hold or move, and faults. The columns are those of a readings file; true_volume_flow_L_min,
+    /// true_mass_flow_g_min and faults stand beside them. The same seed gives the same file. A scenario that cannot be
+    /// (two phases, vacuum at the outlet, Mach above 0.3) is refused with the physical reason.
+    #[command(
+        after_long_help = "Example:\n  evenbore simulate examples/workshop/scenarios/gas-bench.toml --out readings.csv"
+    )]
+    Simulate(simulate::Arguments),
     /// Show the stored fluids, build tables of your own
     #[command(subcommand)]
     Fluid(fluid::Arguments),
@@ -85,6 +96,7 @@ fn main() -> ExitCode {
         Command::Size(arguments) => size::run(&arguments),
         Command::Plan(arguments) => plan::run(&arguments),
         Command::Predict(arguments) => predict::run(&arguments),
+        Command::Simulate(arguments) => simulate::run(&arguments),
         Command::Fluid(arguments) => fluid::run(&arguments),
     };
     match ended {

@@ -76,14 +76,8 @@ fn measure() -> Result<(), Failure> {
         let reading = reading(&mut seed);
         let conditions = meter.conditions(reading.temperature, reading.line_pressure, None)?;
         let curve = FlowCurve::of(&conditions)?;
-        let input = Bench {
-            meter: &meter,
-            conditions: &conditions,
-            curve: &curve,
-            reading,
-            simple: &simple,
-            record: &bytes,
-        };
+        let input =
+            Bench { meter: &meter, conditions: &conditions, curve: &curve, reading, simple: &simple, record: &bytes };
         curve_sample.add(counter.cost(bench::curve_sample, &input));
         baseline.add(counter.cost(bench::baseline, &input));
         sample.add(counter.cost(bench::sample, &input));

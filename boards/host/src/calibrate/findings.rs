@@ -4,7 +4,7 @@
 //! drop, not laminar (points above the lowest half rise off its line), else missing physics. Geometry is asked in any case: it alone sees a wrong gas,
 //! whose fit looks perfect.
 
-use crate::calibrate::fit::{Basis, Prior, Solution, fit, sigma_of};
+use crate::calibrate::fit::{Basis, Prior, Solution, WIDENING_PROBABILITY, fit, sigma_of};
 use crate::calibrate::outcome::Finding;
 use crate::calibrate::samples::Sample;
 use crate::statistics::Result;
@@ -15,6 +15,8 @@ use crate::statistics::least_squares::LeastSquares;
 pub const REFUSING_PROBABILITY: f64 = 0.01;
 /// Leave-one-out residual, in standard uncertainties, above which a point stands out.
 const OUTLYING: f64 = 3.5;
+/// The same above which a point is held to rise off the laminar law together with one that clearly does.
+const RISING: f64 = 1.0;
 /// chi-squared over its degrees of freedom below which stated uncertainties hold a common part.
 const SUSPICIOUSLY_SMALL: f64 = 0.4;
 /// Probability of a chi-squared that small by chance, below which it is said.
@@ -56,6 +58,7 @@ pub fn diagnose(run: &Run<'_>) -> Result<Vec<Finding>> {
     findings.extend(geometry(run, explained));
     findings.extend(prior_used(run));
     findings.extend(suspiciously_good(run)?);
+    findings.extend(widened(run));
     findings.sort_by_key(|finding| !finding.refuses);
     Ok(findings)
 }
@@ -132,19 +135,22 @@ fn transition(run: &Run<'_>) -> Result<Option<Vec<u64>>> {
     Ok(None)
 }
 
-/// The lines from `from` upward, and those before that rise with them, when all rise off a fit to the rest that agrees;
-/// one point alone is an outlier instead.
-fn rising_tail(run: &Run<'_>, mut from: usize) -> Result<Option<Vec<u64>>> {
+/// The lines from `from` upward and the one below, when all from there rise off a fit to the rest that agrees; a top
+/// point alone, the one below it not rising with it, is an outlier instead.
+///
+/// The one below goes too because a transition does not begin at once; which it is does not depend on its own error, so
+/// that leaving it out does not bend the fit.
+fn rising_tail(run: &Run<'_>, from: usize) -> Result<Option<Vec<u64>>> {
     let sorted = run.samples;
     let below = |from: usize| fit(&sorted[..from], run.u_viscosity, run.solution.prior);
     let half = (sorted.len() / 2).max(4);
-    while from > half && prediction_error(&below(from - 1)?, &sorted[from - 1]) > OUTLYING / 2.0 {
-        from -= 1;
-    }
-    let line = below(from)?;
-    let all_above = sorted[from..].iter().all(|s| prediction_error(&line, s) > OUTLYING / 2.0);
+    let alone = from + 1 == sorted.len();
+    let suspect = from > half && (!alone || prediction_error(&below(from - 1)?, &sorted[from - 1]) > RISING);
+    let first = if suspect { from - 1 } else { from };
+    let line = below(first)?;
+    let all_above = sorted[from..].iter().all(|s| prediction_error(&line, s) > RISING);
     let agrees = line.p_value() >= REFUSING_PROBABILITY;
-    let mut lines: Vec<u64> = sorted[from..].iter().map(|s| s.line).collect();
+    let mut lines: Vec<u64> = sorted[first..].iter().map(|s| s.line).collect();
     lines.sort_unstable();
     Ok((agrees && all_above && lines.len() > 1).then_some(lines))
 }
@@ -200,7 +206,8 @@ fn outlier_that_heals(run: &Run<'_>) -> Result<Option<Finding>> {
     }
     let rest: Vec<Sample> = run.samples.iter().enumerate().filter(|&(j, _)| j != i).map(|(_, s)| s.clone()).collect();
     let healed = fit(&rest, run.u_viscosity, run.solution.prior)?;
-    let heals = healed.basis == Basis::Residuals || healed.p_value() >= REFUSING_PROBABILITY;
+    // What remains must not itself scatter too much: else leaving out the worst point hides an understated noise.
+    let heals = healed.basis == Basis::Residuals || healed.p_value() >= WIDENING_PROBABILITY;
     Ok(heals.then(|| standing_out(run, i, z)))
 }
 
@@ -299,6 +306,23 @@ fn prior_used(run: &Run<'_>) -> Option<Finding> {
              and flows more than a fifth beyond the run are flagged"
         );
         finding("b-from-prior", Vec::new(), false, message)
+    })
+}
+
+/// Uncertainty taken from the scatter, which is larger than stated.
+fn widened(run: &Run<'_>) -> Option<Finding> {
+    let solution = run.solution;
+    (solution.widening > 1.0).then(|| {
+        let message = format!(
+            "Chi-squared is {:.2} per degree of freedom, by chance in {:.1} % of runs: the uncertainty of the fit is \
+             taken from the scatter of the points, {:.2} times what follows from the stated uncertainties, with {} \
+             degrees of freedom",
+            solution.chi_squared / solution.degrees_of_freedom as f64,
+            100.0 * solution.p_value(),
+            solution.widening.sqrt(),
+            solution.degrees_of_freedom
+        );
+        finding("uncertainty-widened", Vec::new(), false, message)
     })
 }
 

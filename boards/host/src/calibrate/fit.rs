@@ -15,6 +15,8 @@ use evenbore::calibration::Cause;
 /// Rounds of reweighting.
 const ROUNDS: usize = 4;
 
+/// Probability of a chi-squared below which the scatter of the points counts instead of what is stated.
+pub const WIDENING_PROBABILITY: f64 = 0.05;
 /// Standard uncertainty, over nominal B, above which the data are held not to fix B.
 pub const UNFIXED_B: f64 = 0.20;
 /// Relative standard uncertainty of B from geometry.
@@ -78,12 +80,32 @@ pub struct Solution {
     pub scatter: f64,
     /// The prior used, if any.
     pub prior: Option<Prior>,
+    /// Factor by which the covariance was widened because the points scatter more than is stated; 1 if it was not.
+    pub widening: f64,
 }
 
 impl Solution {
     /// Effective degrees of freedom of the fit's uncertainty: infinite when it was stated beforehand.
     pub fn type_a_degrees_of_freedom(&self) -> f64 {
-        if self.basis == Basis::Stated { f64::INFINITY } else { self.degrees_of_freedom as f64 }
+        if self.basis == Basis::Stated && self.widening == 1.0 {
+            f64::INFINITY
+        } else {
+            self.degrees_of_freedom as f64
+        }
+    }
+
+    /// The same solution with its covariance multiplied by chi-squared per degree of freedom (Birge 1932) where a
+    /// chi-squared that large comes by chance in less than one run of twenty. The scatter then being an estimate, the fit
+    /// has finite degrees of freedom.
+    ///
+    /// Widening every run above one would overstate half of the good ones; a run just short of refusal left as it is
+    /// would understate (`proof::coverage` shows both).
+    pub fn widened_by_scatter(self) -> Self {
+        if self.basis != Basis::Stated || self.p_value() >= WIDENING_PROBABILITY {
+            return self;
+        }
+        let widening = (self.chi_squared / self.degrees_of_freedom as f64).max(1.0);
+        Self { covariance: self.covariance.scaled(widening), widening, ..self }
     }
 
     /// Probability of a chi-squared at least as large by chance; 1 when the residuals are the basis, since the scale
@@ -270,6 +292,7 @@ pub fn fit(samples: &[Sample], u_viscosity: f64, prior: Option<Prior>) -> Result
         basis,
         scatter: problem.scatter,
         prior,
+        widening: 1.0,
     })
 }
 

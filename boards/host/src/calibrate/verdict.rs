@@ -205,9 +205,9 @@ pub fn best_fit(used: &[Sample], nominal: Option<[f64; 2]>, u_viscosity: f64) ->
     let prior = match nominal {
         Some([_, b]) if free.b <= 0.0 || u_b > UNFIXED_B * b => Prior { value: b, u: fit::PRIOR_B * b },
         None if free.b < 0.0 => Prior { value: 0.0, u: 0.01 * free.b.abs() },
-        _ => return Ok(free),
+        _ => return Ok(free.widened_by_scatter()),
     };
-    fit::fit(used, u_viscosity, Some(prior))
+    Ok(fit::fit(used, u_viscosity, Some(prior))?.widened_by_scatter())
 }
 
 /// Names the fluids of the same phase with which A and B would agree with the drawing.

@@ -6,6 +6,7 @@ pub mod fluid;
 mod fluid_build;
 pub mod plan;
 pub mod predict;
+pub mod simulate;
 pub mod size;
 
 use clap::Args;

@@ -98,14 +98,23 @@ impl ElementFile {
     /// # Ok::<(), evenbore_bench::input::problem::Problem>(())
     /// ```
     pub fn read(text: &TomlText) -> Result<Self, Problem> {
-        let keys = Section::top(text)?;
+        Self::from_keys(&Section::top(text)?)
+    }
+
+    /// Reads an element from a table of a file.
+    ///
+    /// * `keys`: the table
+    ///
+    /// # Errors
+    /// Names the line and key of what is missing, unknown, outside its range or in conflict with the shape.
+    pub fn from_keys(keys: &Section<'_>) -> Result<Self, Problem> {
         keys.accept(&[COMMON_KEYS, &OWN_KEYS.concat()].concat())?;
         let shape = keys.choice("shape", SHAPES)?;
-        refuse_foreign(&keys, shape)?;
+        refuse_foreign(keys, shape)?;
         Ok(Self {
-            serial: serial(&keys)?,
-            shape: sizes(&keys, shape)?,
-            count: count(&keys, shape)?,
+            serial: serial(keys)?,
+            shape: sizes(keys, shape)?,
+            count: count(keys, shape)?,
             length_mm: keys.number("length_mm", LENGTH)?,
             expansion_per_k: keys.number("expansion_per_K", EXPANSION)?,
             reference_temperature_c: keys.number("reference_temperature_C", REFERENCE)?,

@@ -228,6 +228,59 @@ impl<'t> Section<'t> {
         Ok(tables)
     }
 
+    /// Takes the table under a key out of this one; none if the key is not there.
+    ///
+    /// * `key`: as in the file, `[key]` or `key = {...}`
+    ///
+    /// # Errors
+    /// Names a value that is no table.
+    pub fn take(&mut self, key: &str) -> Result<Option<Self>, Problem> {
+        if self.has(key) && !matches!(self.find(key), Some(Found { value: DeValue::Table(_), .. })) {
+            return Err(self.problem(key, format!("a table [{key}] with keys below it was expected")));
+        }
+        let (source, at) = (self.source, self.find(key).map_or(self.at, |found| found.span.start));
+        let table = |value| match value {
+            DeValue::Table(table) => Some(Self { source, name: key.to_owned(), at, table }),
+            _ => None,
+        };
+        Ok(self.table.remove(key).and_then(|value| table(value.into_inner())))
+    }
+
+    /// Takes the tables `[[key]]` out of this one, in the order of the file; none if there are none.
+    ///
+    /// * `key`: as in the file
+    ///
+    /// # Errors
+    /// Names a value that is no table.
+    pub fn take_each(&mut self, key: &str) -> Result<Vec<Self>, Problem> {
+        let wrong = self.problem(key, format!("tables under lines [[{key}]] were expected"));
+        let source = self.source;
+        let Some(value) = self.table.remove(key) else { return Ok(Vec::new()) };
+        let DeValue::Array(array) = value.into_inner() else { return Err(wrong) };
+        let mut tables = Vec::new();
+        for entry in array {
+            let at = entry.span().start;
+            let DeValue::Table(table) = entry.into_inner() else { return Err(wrong) };
+            tables.push(Self { source, name: key.to_owned(), at, table });
+        }
+        Ok(tables)
+    }
+
+    /// A number, or a pair of numbers for a way from one to the other; none if the key is not there.
+    ///
+    /// * `key`: as in the file
+    /// * `limits`: of each number
+    ///
+    /// # Errors
+    /// Names a value that is neither, or outside its limits.
+    pub fn optional_way(&self, key: &str, limits: Limits) -> Result<Option<[f64; 2]>, Problem> {
+        match self.find(key) {
+            None => Ok(None),
+            Some(found @ Found { value: DeValue::Array(_), .. }) => self.pair_in(key, &found, [limits; 2]).map(Some),
+            Some(found) => self.number_in(key, &found, limits).map(|value| Some([value; 2])),
+        }
+    }
+
     /// States a problem with the value of a key, or with the table where the key is missing.
     ///
     /// * `key`: the key

@@ -195,6 +195,11 @@ impl VirtualElement {
         Ok(self.outcome(substance, upstream, drop, mass_flow, one, stations))
     }
 
+    /// Reynolds number of a mass flow (kg/s) through channels all alike, as drawn, at a viscosity (Pa s).
+    pub fn reynolds(&self, mass_flow: f64, viscosity: f64) -> f64 {
+        mass_flow.abs() / (self.count * self.section.area()) * self.section.hydraulic_diameter() / viscosity
+    }
+
     fn check(&self, upstream: &Upstream) -> Result<(), Refused> {
         within("absolute pressure (Pa)", upstream.pressure, 1.0, 1e9)?;
         within("temperature of the fluid (K)", upstream.temperature, 1.0, 3000.0)?;
