@@ -30,6 +30,9 @@ enum Command {
     /// the one that all points share and that does not average away. Without any of the former the scatter of the
     /// points is taken, with fewer degrees of freedom and a larger coverage factor.
     ///
+    /// The record states uncertainties for an instrument whose sensors have standard uncertainties of 0.2 Pa and 0.1 %
+    /// of pressure drop, 0.1 K, and 0.1 % of line pressure, unless the options below say otherwise.
+    ///
     /// The run is refused (exit code 3, no record) when the points do not fit the laminar law within their stated
     /// uncertainties, when one stands out, or when A and B are not those of the drawing; the findings say why.
     #[command(after_long_help = "Example:\n  evenbore calibrate bench.csv --element element.toml --out EB-0042")]
@@ -40,8 +43,10 @@ enum Command {
     /// port marked upstream whichever way the flow goes), or line_gauge_pressure_<unit> with
     /// barometric_pressure_<unit>; relative_humidity_<unit> makes air moist, and its cell stays empty for other fluids.
     /// All columns are carried through. Added are volume_flow (at the line's temperature and pressure), mass_flow,
-    /// standard_flow (dry, at the reference conditions), reynolds, u_volume_flow_rel, u_mass_flow_rel, u_standard_flow_rel (standard, relative), status:
-    /// good, or what a flow is flagged with, or why there is none, in which case its cells are empty.
+    /// standard_flow (dry, at the reference conditions), reynolds, u_volume_flow_rel, u_mass_flow_rel,
+    /// u_standard_flow_rel (standard, relative) and status: good, or what a flow is flagged with, or why there is none,
+    /// in which case its cells are empty. A reading whose pressure drop, temperature or line pressure cell is empty is
+    /// such a row; text that is no number, NaN too, stops the file.
     #[command(after_long_help = "Example:\n  evenbore flow day.csv --record EB-0042/record.toml --out flows.csv")]
     Flow(flow::Arguments),
     /// Propose elements for a flow and a pressure drop

@@ -4,7 +4,7 @@ pub mod atomic;
 
 use std::{
     io::{self, BufWriter, Stdout, Write},
-    path::Path,
+    path::{Path, PathBuf},
 };
 
 use crate::{
@@ -109,6 +109,27 @@ impl Write for Sink {
 /// ```
 pub fn shortest(value: f32) -> String {
     if (1e-4..1e7).contains(&value.abs()) || value == 0.0 { format!("{value}") } else { format!("{value:e}") }
+}
+
+/// Writes several files that belong together: each is complete beside its place before the first gets its name.
+///
+/// * `files`: path and content, in the order in which they get their names
+/// * `between`: what to do once all are complete and none has its name
+///
+/// # Errors
+/// Where the system refuses; before the first got its name, then none has.
+pub fn write_together(
+    files: &[(PathBuf, &[u8])],
+    between: impl FnOnce() -> Result<(), Problem>,
+) -> Result<(), Problem> {
+    let complete = |(path, bytes): &(PathBuf, &[u8])| {
+        let mut file = WholeFile::create(path)?;
+        file.write_all(bytes).and_then(|()| file.flush()).map_err(|error| file.problem(&error))?;
+        Ok(file)
+    };
+    let complete = files.iter().map(complete).collect::<Result<Vec<WholeFile>, Problem>>()?;
+    between()?;
+    complete.into_iter().try_for_each(WholeFile::finish)
 }
 
 /// Writes a whole file, or to standard output for `-`.

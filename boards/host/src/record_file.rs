@@ -56,7 +56,14 @@ pub fn open(path: &Path) -> Result<Record, Problem> {
 
 fn from_text(name: &str, text: &str) -> Result<Record, Problem> {
     let source = TomlText::new(name, text);
-    let RecordText { checksum, record } = toml::from_str(text).map_err(|error| source.syntax(&error))?;
+    let RecordText { checksum, record } = toml::from_str(text).map_err(|error| {
+        // An element file is the likeliest thing to be taken for a record.
+        let keys = text.parse::<toml::Table>().unwrap_or_default();
+        if keys.contains_key("shape") && !keys.contains_key("record") {
+            return Problem::new(name, "not a calibration record: this looks like an element file");
+        }
+        source.syntax(&error)
+    })?;
     record.check().map_err(|error| Problem::new(name, error.to_string()))?;
     let computed = format!("{:08x}", record.checksum());
     if computed == checksum {

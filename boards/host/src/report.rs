@@ -43,6 +43,8 @@ pub struct Provenance {
     pub command: String,
     /// CRC-32 of the record written from this calibration, as printed.
     pub record_crc: Option<String>,
+    /// Where the uncertainties of the instrument's sensors come from, in words.
+    pub sensors: String,
     /// The element as described to the tool: name and value, in the order to print.
     pub element: Vec<(String, String)>,
 }
@@ -68,6 +70,7 @@ pub fn render(calibration: &Calibration, provenance: &Provenance) -> Result<Stri
         common => tables::common(calibration),
         coverage => words::coverage(calibration),
         basis => words::basis(calibration),
+        state => words::state(calibration),
         cautions => words::cautions(calibration),
         provenance => provenance_values(provenance),
     })
@@ -182,6 +185,7 @@ fn provenance_values(provenance: &Provenance) -> Value {
     context! {
         version => or_dash(&provenance.tool_version),
         command => or_dash(&provenance.command),
+        sensors => or_dash(&provenance.sensors),
         crc => provenance.record_crc.as_deref().map_or(MISSING, or_dash),
         element => provenance.element.iter().map(pair).collect::<Vec<Value>>(),
     }

@@ -3,7 +3,7 @@
 
 use evenbore::calibration::Cause;
 use evenbore::double::{Conditions, Properties};
-use evenbore::fluid::{StoredFluid, catalogue::NITROGEN, catalogue::WATER};
+use evenbore::fluid::{StoredFluid, catalogue::AIR, catalogue::NITROGEN, catalogue::WATER};
 use evenbore::quantity::{AbsolutePressure, Length, PressureDrop, Temperature};
 use evenbore::reading::SensorUncertainty;
 use evenbore::reference::ReferenceConditions;
@@ -349,6 +349,38 @@ fn scatter_alone_is_covered_with_students_factor() {
     }
 }
 
+/// A common zero counts alike whether the independent errors are stated or are told by the scatter.
+#[test]
+fn a_common_zero_counts_beside_scatter_as_beside_stated_errors() {
+    let errors = Errors { drop: 1e-3, ..Errors::default() };
+    let covariance = |zero: Option<f64>, scatter: Option<f64>| {
+        let mut run = run(&law(&made()), &drops(12), &errors, &mut Noise(17));
+        for point in &mut run.points {
+            let independent = scatter.map(|scatter| scatter * point.pressure_drop);
+            point.u.pressure_drop = Parts { independent, common: zero };
+        }
+        let found = fitted(&run, NITROGEN.fluid());
+        (found.covariance.standard_uncertainties(), found.scatter)
+    };
+    for zero in [None, Some(2.0)] {
+        let (from_scatter, scatter) = covariance(zero, None);
+        let (stated, _) = covariance(zero, Some(scatter));
+        for (got, expected) in from_scatter.iter().zip(stated) {
+            assert_close(*got, expected, 0.05, &format!("zero {zero:?}"));
+        }
+    }
+    let listed = {
+        let mut run = run(&law(&made()), &drops(12), &errors, &mut Noise(17));
+        run.points.iter_mut().for_each(|point| point.u.pressure_drop.common = Some(2.0));
+        judged(&run).calibration
+    };
+    let zero = listed.common.iter().find(|part| part.name == "pressure-drop-zero").expect("a listed zero");
+    assert_eq!((zero.u, zero.unit.as_str()), (2.0, "Pa"));
+    assert!(zero.effect_a.abs() > 0.0 && zero.effect_a.abs() < listed.u_a_fit, "{zero:?}");
+    let ([without, _], [with, _]) = (covariance(None, None).0, covariance(Some(2.0), None).0);
+    assert!(with > 1.5 * without, "the zero is lost: {with} beside {without}");
+}
+
 /// Budget lines add up to the combined uncertainty of the flow.
 #[test]
 fn the_budget_adds_up() -> Outcome {
@@ -362,8 +394,34 @@ fn the_budget_adds_up() -> Outcome {
     };
     let top = found.uncertainty.last().ok_or("no rows")?;
     let combined = top.type_a.hypot(top.common).hypot(top.sensors);
-    assert_close(total(1.0), combined, 0.02, "budget at full scale");
+    assert_close(total(1.0), combined, 0.005, "budget at full scale");
     assert!(total(0.1) > total(1.0));
+    Ok(())
+}
+
+/// Moist air brings what its water does to viscosity into the calibration, where it stays, and into its use.
+#[test]
+fn moist_air_is_calibrated_and_judged_moist() -> Outcome {
+    let humid = Conditions::new(&made(), AIR.fluid(), T, P, Some(0.6))?;
+    let errors = Errors { flow: 1e-3, drop: 7e-4, flow_common: 1e-3, ..Errors::default() };
+    let mut run = run(&humid, &drops(12), &errors, &mut Noise(11));
+    run.points.iter_mut().for_each(|point| point.relative_humidity = Some(0.6));
+    let order = Order { sensors: SensorUncertainty::COMMON, ..order(AIR.fluid()) };
+    let verdict = calibrate(&run, &order)?;
+    let found = verdict.calibration;
+    let u = humid.u_viscosity_of_water();
+    let part = found.common.iter().find(|part| part.name == "moisture").ok_or("no moisture")?;
+    assert_close(part.u, u, 1e-6, "u of the water");
+    assert_close(part.effect_a, -u * found.a, 1e-3, "its effect on A");
+    assert!(verdict.record.ok_or("no record")?.quality.common.iter().any(|part| part.cause == Cause::Moisture));
+    assert_close(found.state.relative_humidity.ok_or("no humidity")?, 0.6, 1e-12, "mean humidity");
+    assert!(
+        ["humidity", "viscosity of moist air"].iter().all(|name| found.budget.iter().any(|row| row.source == *name))
+    );
+    let rows = found.budget.iter().filter(|row| row.at == 1.0);
+    let total = rows.map(|row| row.contribution * row.contribution).sum::<f64>().sqrt();
+    let top = found.uncertainty.last().ok_or("no rows")?;
+    assert_close(total, top.type_a.hypot(top.common).hypot(top.sensors), 0.005, "budget on moist air");
     Ok(())
 }
 

@@ -583,6 +583,7 @@ fn damaged_records_are_refused() -> Outcome {
     refused("typo.toml", &["typo.toml:"])?;
     bench.write("other.toml", "x = 1\n")?;
     refused("other.toml", &["other.toml:"])?;
+    refused("element.toml", &["element.toml: not a calibration record: this looks like an element file"])?;
     refused("absent.toml", &["absent.toml: cannot open"])
 }
 
@@ -691,5 +692,57 @@ fn an_oil_of_ones_own_calibrates_with_b_from_geometry() -> Outcome {
     // The record carries its fluid: no file is needed at use.
     let used = bench.run("flow oil.csv --record out/record.toml --fluid workshop-oil")?;
     assert!(used.status.success(), "{}", err(&used));
+    Ok(())
+}
+
+#[test]
+fn options_that_cannot_be_meant_are_named() -> Outcome {
+    let bench = Bench::new()?;
+    bench.calibrate("bench-nitrogen.csv", "")?;
+    let refused = |more: &str, parts: &[&str]| -> Outcome {
+        let output = bench.run(&format!("flow day-air-helium.csv --out flows.csv {more}"))?;
+        assert_eq!(output.status.code(), Some(2), "{more}");
+        assert_holds(&err(&output), parts);
+        assert!(!bench.path("flows.csv").exists());
+        Ok(())
+    };
+    refused("", &["--record <RECORD.toml>", "--element <ELEMENT.toml>"])?;
+    refused("--record out/record.toml --fluid nitrogen", &["day-air-helium.csv:", "--fluid says nitrogen"])?;
+    refused("--record out/record.toml --fluid phlogiston", &["evenbore: --fluid: ", "phlogiston"])?;
+    refused("--record out/record.toml --u-temperature 1000K", &["evenbore: --u-temperature: ", "temperature (K)"])
+}
+
+/// A refused run leaves no record beside its report, and what cannot be written whole is not written at all.
+#[test]
+fn results_of_a_run_belong_together() -> Outcome {
+    let bench = Bench::new()?;
+    bench.calibrate("bench-nitrogen.csv", "")?;
+    let (record, report) = (bench.read("out/record.toml")?, bench.read("out/report.html")?);
+    bench.write("doctored.csv", Sheet::bench()?.change(FLOW, |i, q| q * if i == 4 { 1.01 } else { 1.0 }).text())?;
+    fs::rename(bench.path("out/record.bin"), bench.path("kept.bin"))?;
+    fs::create_dir(bench.path("out/record.bin"))?;
+    let output = bench.run("calibrate bench-nitrogen.csv --element element.toml --out out")?;
+    assert_eq!(output.status.code(), Some(2));
+    assert_eq!(bench.read("out/report.html")?, report);
+    fs::remove_dir(bench.path("out/record.bin"))?;
+    fs::rename(bench.path("kept.bin"), bench.path("out/record.bin"))?;
+    let output = bench.run("calibrate doctored.csv --element element.toml --out out")?;
+    assert_eq!(output.status.code(), Some(3));
+    assert_holds(&err(&output), &["record.toml is of an earlier run and is now", "record.bin.earlier"]);
+    assert!(!bench.path("out/record.toml").exists() && !bench.path("out/record.bin").exists());
+    assert_eq!(bench.read("out/record.toml.earlier")?, record);
+    Ok(())
+}
+
+#[test]
+fn moist_air_is_shown_with_what_its_water_adds() -> Outcome {
+    let bench = Bench::new()?;
+    let u = |more: &str| -> Result<f64, Box<dyn Error>> {
+        let shown: Value = serde_json::from_str(&out(&bench.run(&format!("fluid show air --json {more}"))?))?;
+        shown["u_viscosity_rel"].as_f64().ok_or_else(|| "no uncertainty".into())
+    };
+    assert!(u("--temperature 40C --relative-humidity 90pct")? > 2.0 * u("--temperature 40C")?);
+    let refused = bench.run("fluid show air --temperature 80C --relative-humidity 50pct")?;
+    assert_holds(&err(&refused), &["0 to 100 %", "-20 to 60 C"]);
     Ok(())
 }

@@ -273,8 +273,15 @@ fn element_files() {
 fn other_shapes() -> Outcome {
     let other = ELEMENT.replace("round-tubes", "other").replace("bore_mm = 0.44\n", "").replace("count = 120\n", "");
     assert_eq!(element(&other)?.shape, Shape::Other { hydraulic_diameter_mm: None, open_area_mm2: None });
+    let half = format!("{other}open_area_mm2 = 18.0\n");
+    assert_refused(element(&half), &["(open_area_mm2): stands without hydraulic_diameter_mm: give both"]);
+    let both = format!("{half}hydraulic_diameter_mm = 0.4\n");
+    assert_eq!(element(&both)?.shape, Shape::Other { hydraulic_diameter_mm: Some(0.4), open_area_mm2: Some(18.0) });
+    let two = ELEMENT.replace("round-tubes", "parallel-plates").replace("count = 120", "count = 2");
+    let two = two.replace("bore_mm = 0.44", "gap_mm = 0.2\nwidth_mm = 30");
+    assert_refused(element(&two), &["element.toml:3, column 9 (count): 2 is not 1", "total width"]);
     let plates = |gap: &str| {
-        let text = ELEMENT.replace("round-tubes", "parallel-plates");
+        let text = ELEMENT.replace("round-tubes", "parallel-plates").replace("count = 120", "count = 1");
         element(&text.replace("bore_mm = 0.44", &format!("gap_mm = {gap}\nwidth_mm = 30")))
     };
     assert_eq!(plates("0.2")?.shape, Shape::ParallelPlates { gap_mm: 0.2, width_mm: 30.0 });

@@ -1,7 +1,7 @@
 //! The report page: whole, safe, self-contained, and drawn inside its frames, for runs good, bad and odd.
 
 use evenbore_bench::calibrate::outcome::{
-    BudgetRow, Calibration, CommonEffect, Finding, GeometryRatio, Range, ResidualRow, UncertaintyRow,
+    BudgetRow, Calibration, CommonEffect, Finding, GeometryRatio, MeanState, Range, ResidualRow, UncertaintyRow,
 };
 use evenbore_bench::report::{Provenance, render};
 
@@ -66,6 +66,7 @@ fn simulated(n: usize) -> Calibration {
             reynolds_max: Some(752.4),
             pressure_drop_max: drop(FULL_SCALE),
         },
+        state: MeanState { temperature: 294.65, line_pressure: 118e3, relative_humidity: Some(0.41) },
         uncertainty: (0..=40).map(|i| uncertainty(0.03f64.powf(1.0 - f64::from(i) / 40.0))).collect(),
         residuals: (0..n).map(|i| point(i, flow(i), &mut noise)).collect(),
         budget: [1.0, 0.1].into_iter().flat_map(budget).collect(),
@@ -179,6 +180,7 @@ fn provenance() -> Provenance {
         tool_version: "0.1.0".into(),
         command: "evenbore calibrate bench/2026-03-12-nitrogen.csv --element EB-0042.toml --out out".into(),
         record_crc: Some("5C1A90E7".into()),
+        sensors: "as stated on the command line".into(),
         element: vec![
             item("Shape", "round tubes"),
             item("Count", "120"),
@@ -271,6 +273,8 @@ fn a_good_run_states_its_result() {
     assert!(page.contains("Nothing was found against this run."));
     assert!(page.contains("coverage factor <i>k</i>&nbsp;=\u{a0}2.00;"));
     assert!(page.contains("EB-0042") && page.contains("12 of 12") && page.contains("5C1A90E7"));
+    assert!(page.contains("hold at 21.5\u{a0}°C, 118.0\u{a0}kPa line pressure and a relative humidity of 41\u{a0}%"));
+    assert!(page.contains("the sensors of the instrument as stated on the command line."));
     assert_eq!(page.matches("<figcaption>").count(), 3);
 }
 
@@ -325,6 +329,7 @@ fn text_of_the_user_is_escaped_everywhere() {
         tool_version: hostile.into(),
         command: hostile.into(),
         record_crc: Some(hostile.into()),
+        sensors: hostile.into(),
         element: vec![(hostile.into(), hostile.into())],
     };
     let page = render(&run, &origin).expect("the template renders");

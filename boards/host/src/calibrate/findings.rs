@@ -23,7 +23,7 @@ const SUSPICIOUSLY_SMALL: f64 = 0.4;
 const SMALL_PROBABILITY: f64 = 0.05;
 /// Fewest points for a run to stand, and for it to pass without remark.
 const FEWEST: [usize; 2] = [5, 8];
-/// Share by which A and B may differ from nominal geometry.
+/// Share by which A and B may differ from nominal geometry; two standard uncertainties of B come on top.
 pub const GEOMETRY_LIMITS: [f64; 2] = [0.10, 0.30];
 
 /// Everything the diagnosis looks at.
@@ -279,7 +279,8 @@ fn missing_physics(run: &Run<'_>, curved: f64) -> Finding {
 fn geometry(run: &Run<'_>, explained: bool) -> Option<Finding> {
     let [a0, b0] = run.nominal?;
     let (a, b) = (run.solution.a / a0, run.solution.b / b0);
-    let [limit_a, limit_b] = GEOMETRY_LIMITS;
+    let [_, u_b] = run.solution.total().standard_uncertainties();
+    let [limit_a, limit_b] = [GEOMETRY_LIMITS[0], GEOMETRY_LIMITS[1] + 2.0 * u_b / b0];
     let (off_a, off_b) =
         ((a - 1.0).abs() > limit_a, !explained && run.solution.prior.is_none() && (b - 1.0).abs() > limit_b);
     (off_a || off_b).then(|| {
@@ -294,15 +295,15 @@ fn geometry(run: &Run<'_>, explained: bool) -> Option<Finding> {
 fn prior_used(run: &Run<'_>) -> Option<Finding> {
     let prior = run.solution.prior?;
     if prior.value == 0.0 {
-        let message = "The run does not show a kinetic term and the drawing gives none; B is held at zero, and the \
-                       range of validity ends with the run";
+        let message = "The run does not show a kinetic term and the drawing gives none; B is held at zero, and \
+                       flows more than a fifth beyond the run are flagged";
         return Some(finding("b-from-prior", Vec::new(), false, message.into()));
     }
     Some({
         let percent = 100.0 * prior.u / prior.value;
         let message = format!(
             "The run does not reach flows large enough to fix B; it is held at its geometric value within {percent:.0} %, \
-             and the range of validity ends with the run"
+             and flows more than a fifth beyond the run are flagged"
         );
         finding("b-from-prior", Vec::new(), false, message)
     })

@@ -17,7 +17,7 @@ const ROUNDS: usize = 4;
 
 /// Probability of a chi-squared below which the scatter of the points counts instead of what is stated.
 pub const WIDENING_PROBABILITY: f64 = 0.05;
-/// Relative standard uncertainty above which the data are held not to fix B.
+/// Standard uncertainty, over nominal B, above which the data are held not to fix B.
 pub const UNFIXED_B: f64 = 0.20;
 /// Relative standard uncertainty of B from geometry.
 pub const PRIOR_B: f64 = 0.10;
@@ -58,10 +58,12 @@ pub struct Solution {
     pub a: f64,
     /// 1/m4.
     pub b: f64,
-    /// Covariance of the fit alone, scaled by the scatter when that is the basis.
+    /// Covariance of the fit alone, at the weights of the scatter when that is the basis.
     pub covariance: PairCovariance,
     /// Parts common to all points, the zero of the pressure drop excepted (it is in `covariance`).
     pub common: Vec<CommonShift>,
+    /// What one standard uncertainty of the common zero does; it is in `covariance` already.
+    pub zero: Option<CommonShift>,
     /// Effective standard uncertainty of Y per point, 1/m3 (1/m3 of scatter when residuals are the basis).
     pub sigmas: Vec<f64>,
     /// Weighted sum of squared residuals, and its degrees of freedom.
@@ -164,13 +166,14 @@ fn common_effects(samples: &[Sample], cause: Cause, u_viscosity: f64, a: f64, b:
     };
     let effect = |sample: &Sample| match cause {
         Cause::Viscosity => u_viscosity * sample.viscosity_slope(a),
+        Cause::Moisture => sample.u_viscosity_of_water * sample.viscosity_slope(a),
         Cause::ReferenceFlow => {
             of_sources(sample, &[Source::ReferenceFlow, Source::ReferenceTemperature, Source::ReferencePressure])
         }
         Cause::Density => of_sources(sample, &[Source::LinePressure, Source::RelativeHumidity]),
         Cause::Temperature => of_sources(sample, &[Source::Temperature]),
         Cause::PressureDrop | Cause::PressureDropZero => of_sources(sample, &[Source::PressureDrop]),
-        Cause::Geometry | Cause::Moisture => 0.0,
+        Cause::Geometry => 0.0,
     };
     samples.iter().map(effect).collect()
 }
@@ -251,36 +254,39 @@ pub fn fit(samples: &[Sample], u_viscosity: f64, prior: Option<Prior>) -> Result
         (Basis::Residuals, Some(_)) => Some(fit(samples, u_viscosity, None)?.scatter.max(f64::EPSILON)),
         _ => None,
     };
-    let problem = Problem { samples, prior, zero: zero_like(samples), scatter: known_scatter.unwrap_or(1.0) };
+    let mut problem = Problem { samples, prior, zero: zero_like(samples), scatter: known_scatter.unwrap_or(1.0) };
+    let scatter_unknown = basis == Basis::Residuals && known_scatter.is_none();
     let y = problem.column(|s| s.columns.y, prior.map_or(0.0, |prior| prior.value));
     let (mut a, mut b) = (mean_y(samples)?, 0.0);
     let mut sigmas = problem.sigmas(basis, a, b);
     let mut fit = problem.solve(&y, &sigmas, &problem.zero_effects(a, b))?;
     for _ in 0..ROUNDS {
         (a, b) = (fit.solution[0], fit.solution[1]);
+        if scatter_unknown {
+            // The scatter becomes the weights' own, so that a zero stands beside it in its true size.
+            let unit = fit.residual_variance().unwrap_or(1.0).sqrt();
+            problem.scatter = (problem.scatter * unit).max(f64::EPSILON);
+        }
         sigmas = problem.sigmas(basis, a, b);
         fit = problem.solve(&y, &sigmas, &problem.zero_effects(a, b))?;
     }
     (a, b) = (fit.solution[0], fit.solution[1]);
     let common = shifts(&problem, u_viscosity, &sigmas, a, b)?;
+    let zero = zero_shift(&problem, &sigmas, a, b)?;
     let n = samples.len();
-    let scatter = match (basis, known_scatter) {
-        (Basis::Residuals, None) => fit.residual_variance().unwrap_or(1.0),
-        _ => 1.0,
-    };
-    let unit = scatter.sqrt();
     Ok(Solution {
         a,
         b,
-        covariance: PairCovariance::from_fit(&fit)?.scaled(scatter),
+        covariance: PairCovariance::from_fit(&fit)?,
         common,
-        chi_squared: fit.chi_squared / scatter,
+        zero,
+        chi_squared: fit.chi_squared,
         degrees_of_freedom: fit.degrees_of_freedom - if known_scatter.is_some() { 1 } else { 0 },
-        standardised: fit.standardised.iter().take(n).map(|r| r / unit).collect(),
+        standardised: fit.standardised.iter().take(n).copied().collect(),
         leave_one_out: leave_one_out(&fit, basis, n),
-        sigmas: sigmas.iter().take(n).map(|s| s * unit).collect(),
+        sigmas: sigmas.iter().take(n).copied().collect(),
         basis,
-        scatter: problem.scatter * unit,
+        scatter: problem.scatter,
         prior,
         widening: 1.0,
     })
@@ -301,7 +307,14 @@ fn mean_y(samples: &[Sample]) -> Result<f64> {
 /// The common parts, each carried through the fit: the estimator is linear, so its answer to the effects of one
 /// standard uncertainty is the shift of A and B.
 fn shifts(problem: &Problem<'_>, u_viscosity: f64, sigmas: &[f64], a: f64, b: f64) -> Result<Vec<CommonShift>> {
-    let causes = [Cause::ReferenceFlow, Cause::Viscosity, Cause::PressureDrop, Cause::Density, Cause::Temperature];
+    let causes = [
+        Cause::ReferenceFlow,
+        Cause::Viscosity,
+        Cause::PressureDrop,
+        Cause::Density,
+        Cause::Temperature,
+        Cause::Moisture,
+    ];
     let zero = problem.zero_effects(a, b);
     let mut shifts = Vec::new();
     for cause in causes {
@@ -321,6 +334,16 @@ fn shifts(problem: &Problem<'_>, u_viscosity: f64, sigmas: &[f64], a: f64, b: f6
         shifts.push(CommonShift { cause, u, shift: [settled(shift[0], a), settled(shift[1], b)] });
     }
     Ok(shifts)
+}
+
+/// What one standard uncertainty of the common zero does to A and B, if there is one.
+fn zero_shift(problem: &Problem<'_>, sigmas: &[f64], a: f64, b: f64) -> Result<Option<CommonShift>> {
+    let Some(u) = largest_u(problem.samples, Cause::PressureDropZero, 0.0).filter(|_| problem.zero) else {
+        return Ok(None);
+    };
+    let effects = problem.zero_effects(a, b);
+    let answer = problem.solve(&effects, sigmas, &effects)?;
+    Ok(Some(CommonShift { cause: Cause::PressureDropZero, u, shift: [answer.solution[0], answer.solution[1]] }))
 }
 
 /// A shift, or zero where it is below the rounding of the coefficient it moves.
@@ -351,7 +374,8 @@ fn largest_u(samples: &[Sample], cause: Cause, u_viscosity: f64) -> Option<f64> 
         Cause::Density => of(Source::LinePressure, |s| s.line_pressure),
         Cause::Temperature => of(Source::Temperature, |_| 1.0),
         Cause::PressureDropZero => of(Source::PressureDrop, |_| 1.0),
-        Cause::Geometry | Cause::Moisture => None,
+        Cause::Moisture => samples.iter().map(|s| s.u_viscosity_of_water).reduce(f64::max),
+        Cause::Geometry => None,
     }
 }
 

@@ -33,7 +33,8 @@ pub struct Calibration {
     pub u_b_fit: f64,
     /// Correlation of `a` and `b` from the fit alone.
     pub correlation_ab_fit: f64,
-    /// Parts shared by all points; they do not average away.
+    /// Parts shared by all points; they do not average away. `pressure-drop-zero` is part of the fit's own uncertainty
+    /// (`u_a_fit`, `u_b_fit`) as well, the others are not.
     pub common: Vec<CommonEffect>,
     /// Whether `b` rests on the geometry rather than on the data.
     pub b_from_prior: bool,
@@ -55,6 +56,8 @@ pub struct Calibration {
     pub geometry: GeometryRatio,
     /// Range over which the calibration holds.
     pub range: Range,
+    /// State at which the uncertainties hold.
+    pub state: MeanState,
     /// Uncertainty over the range, small flow to large.
     pub uncertainty: Vec<UncertaintyRow>,
     /// A row per point.
@@ -66,7 +69,8 @@ pub struct Calibration {
 /// A named common part and its effect on the coefficients.
 #[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct CommonEffect {
-    /// What is shared: `reference-flow`, `viscosity`, `pressure-drop`, `density`, `temperature`, `pressure-drop-zero`.
+    /// What is shared: `reference-flow`, `viscosity`, `pressure-drop`, `density`, `temperature`, `moisture`,
+    /// `pressure-drop-zero`.
     pub name: String,
     /// Relative standard uncertainty of the cause (kelvin for temperature, pascal for a zero).
     pub u: f64,
@@ -112,6 +116,17 @@ pub struct Range {
     pub reynolds_max: Option<f64>,
     /// Largest pressure drop of the run, Pa.
     pub pressure_drop_max: f64,
+}
+
+/// Means of the points used.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize, Deserialize)]
+pub struct MeanState {
+    /// Element temperature, K.
+    pub temperature: f64,
+    /// Absolute line pressure, Pa.
+    pub line_pressure: f64,
+    /// Relative humidity, 0 to 1; absent when no point states one.
+    pub relative_humidity: Option<f64>,
 }
 
 /// Relative uncertainty of volume flow at one flow, with the sensors of the record.

@@ -152,6 +152,10 @@ pub struct Sample {
     pub temperature: f64,
     /// Line pressure, Pa.
     pub line_pressure: f64,
+    /// Relative humidity, 0 to 1.
+    pub relative_humidity: Option<f64>,
+    /// Relative standard uncertainty of viscosity from the air's water, known or not; 0 for other fluids.
+    pub u_viscosity_of_water: f64,
     /// Reference flow as the file gives it, m3/s or kg/s.
     pub reference_flow: f64,
 }
@@ -181,6 +185,8 @@ impl Sample {
             pressure_drop: point.pressure_drop,
             temperature: point.temperature,
             line_pressure: point.line_pressure,
+            relative_humidity: point.relative_humidity,
+            u_viscosity_of_water: setup.conditions(point)?.u_viscosity_of_water(),
             reference_flow: point.reference.flow(),
         })
     }

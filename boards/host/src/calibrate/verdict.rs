@@ -3,7 +3,7 @@
 use crate::calibrate::certainty::{budget, uncertainty_rows};
 use crate::calibrate::findings::{self, Run};
 use crate::calibrate::fit::{self, Prior, Solution, UNFIXED_B};
-use crate::calibrate::outcome::{Calibration, CommonEffect, Finding, GeometryRatio, Range, ResidualRow};
+use crate::calibrate::outcome::{Calibration, CommonEffect, Finding, GeometryRatio, MeanState, Range, ResidualRow};
 use crate::calibrate::samples::{Sample, Setup, Slope, Source};
 use crate::input::points::{Point, Points};
 use crate::input::problem::Problem;
@@ -60,7 +60,8 @@ pub fn calibrate(points: &Points, order: &Order<'_>) -> Result<Verdict, Problem>
     let used = used(&all, order);
     check_spread(points, &used)?;
     let general = |error: crate::statistics::StatisticsError| Problem::new(&points.file, error.to_string());
-    let u_viscosity = f64::from(order.fluid.u_viscosity());
+    let mean_temperature = Temperature::from_kelvin(mean(&used, |s| s.temperature) as f32);
+    let u_viscosity = f64::from(order.fluid.u_viscosity_at(mean_temperature));
     let solution = best_fit(&used, nominal(order), u_viscosity).map_err(general)?;
     let run = Run {
         samples: &used,
@@ -202,7 +203,7 @@ pub fn best_fit(used: &[Sample], nominal: Option<[f64; 2]>, u_viscosity: f64) ->
     let free = fit::fit(used, u_viscosity, None)?;
     let [_, u_b] = free.covariance.standard_uncertainties();
     let prior = match nominal {
-        Some([_, b]) if free.b <= 0.0 || u_b > UNFIXED_B * free.b => Prior { value: b, u: fit::PRIOR_B * b },
+        Some([_, b]) if free.b <= 0.0 || u_b > UNFIXED_B * b => Prior { value: b, u: fit::PRIOR_B * b },
         None if free.b < 0.0 => Prior { value: 0.0, u: 0.01 * free.b.abs() },
         _ => return Ok(free.widened_by_scatter()),
     };
@@ -229,7 +230,7 @@ fn distance_from_drawing(points: &Points, order: &Order<'_>, fluid: &StoredFluid
     let samples: Result<Vec<Sample>, Refusal> = points.points.iter().map(|p| Sample::new(&setup, p)).collect();
     let fitted = fit::fit(&used(&samples.ok()?, order), 0.0, None).ok()?;
     let [limit_a, limit_b] = findings::GEOMETRY_LIMITS;
-    let [_, u_b] = fitted.covariance.standard_uncertainties();
+    let [_, u_b] = fitted.total().standard_uncertainties();
     let (off_a, off_b) = ((fitted.a / a0 - 1.0).abs(), (fitted.b / b0 - 1.0).abs());
     (off_a < limit_a && off_b < limit_b + 2.0 * u_b / b0).then_some(off_a)
 }
@@ -277,6 +278,16 @@ fn mean(used: &[Sample], of: impl Fn(&Sample) -> f64) -> f64 {
     used.iter().map(of).sum::<f64>() / used.len() as f64
 }
 
+/// The state at which uncertainties are stated.
+fn mean_state(used: &[Sample]) -> MeanState {
+    let humid: Vec<f64> = used.iter().filter_map(|s| s.relative_humidity).collect();
+    MeanState {
+        temperature: mean(used, |s| s.temperature),
+        line_pressure: mean(used, |s| s.line_pressure),
+        relative_humidity: (!humid.is_empty()).then(|| humid.iter().sum::<f64>() / humid.len() as f64),
+    }
+}
+
 /// Puts together all that was found.
 fn outcome(
     points: &Points,
@@ -295,7 +306,7 @@ fn outcome(
     let per_x = run.reynolds_per_x;
     let largest_drop = run.samples.iter().map(|s| s.pressure_drop.abs()).fold(0.0, f64::max);
     let (year, month, day) = order.date;
-    let state = [mean(run.samples, |s| s.temperature), mean(run.samples, |s| s.line_pressure)];
+    let state = mean_state(run.samples);
     let dof = solution.type_a_degrees_of_freedom();
     Calibration {
         serial: order.serial.into(),
@@ -312,7 +323,7 @@ fn outcome(
         u_a_fit,
         u_b_fit,
         correlation_ab_fit: solution.covariance.correlation(),
-        common: solution.common.iter().map(effect).collect(),
+        common: solution.common.iter().chain(&solution.zero).map(effect).collect(),
         b_from_prior: solution.prior.is_some(),
         chi_squared: solution.chi_squared,
         degrees_of_freedom: solution.degrees_of_freedom as f64,
@@ -334,9 +345,10 @@ fn outcome(
             reynolds_max: (per_x > 0.0).then_some(x_max * per_x),
             pressure_drop_max: largest_drop,
         },
-        uncertainty: uncertainty_rows(record, state, dof),
+        state,
+        uncertainty: uncertainty_rows(record, &state, largest_drop, dof),
         residuals: residuals(points, order, run, all),
-        budget: budget(record, state, largest_drop, &solution.common, dof),
+        budget: budget(record, &state, largest_drop, &solution.common, dof),
     }
 }
 

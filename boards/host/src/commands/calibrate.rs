@@ -12,7 +12,7 @@ use evenbore_bench::calibrate::verdict::{Order, Verdict, calibrate};
 use evenbore_bench::input::element_file::ElementFile;
 use evenbore_bench::input::points::Points;
 use evenbore_bench::input::problem::Problem;
-use evenbore_bench::output::write_whole;
+use evenbore_bench::output::write_together;
 use evenbore_bench::record_file;
 use evenbore_bench::report::{Provenance, render};
 use evenbore_bench::resources::elements::{describe, has_nominal_coefficients, nominal};
@@ -28,7 +28,8 @@ pub struct Arguments {
     /// Element file, TOML
     #[arg(long, value_name = "ELEMENT.toml")]
     element: PathBuf,
-    /// Folder for calibration.json, record.toml, record.bin and report.html; made if it is not there
+    /// Folder for calibration.json, record.toml, record.bin and report.html; made if it is not there. A refused run
+    /// renames a record that lies there to record.toml.earlier and record.bin.earlier
     #[arg(long, value_name = "DIR")]
     out: PathBuf,
     /// Fluid of the run, where the points name none
@@ -142,7 +143,7 @@ fn order<'a>(
     })
 }
 
-/// Writes the files; the record last, so that a failure before it leaves none that its report does not cover.
+/// Writes the files, all or none; the record gets its name last.
 fn write_results(arguments: &Arguments, file: &ElementFile, verdict: &Verdict) -> Result<(), Problem> {
     let folder = &arguments.out;
     let name = folder.display().to_string();
@@ -151,34 +152,38 @@ fn write_results(arguments: &Arguments, file: &ElementFile, verdict: &Verdict) -
         tool_version: env!("CARGO_PKG_VERSION").into(),
         command: std::env::args_os().skip(1).fold("evenbore".into(), |line, word| line + " " + &word.to_string_lossy()),
         record_crc: verdict.record.as_ref().map(|record| format!("{:08x}", record.checksum())),
+        sensors: arguments.sensors.origin(&SensorUncertainty::COMMON),
         element: describe(file),
     };
     let page = render(&verdict.calibration, &provenance)
         .map_err(|error| Problem::new("report.html", format!("cannot be made: {error}")))?;
-    write_whole(folder.join("calibration.json"), json(&verdict.calibration)?.as_bytes())?;
-    write_whole(folder.join("report.html"), page.as_bytes())?;
-    match &verdict.record {
-        Some(record) => write_record(folder, record),
-        None => {
-            warn_of_old_record(folder);
-            Ok(())
-        }
+    let outcome = json(&verdict.calibration)?;
+    let record = verdict.record.as_ref().map(record_forms).transpose()?;
+    let mut files =
+        vec![(folder.join("calibration.json"), outcome.as_bytes()), (folder.join("report.html"), page.as_bytes())];
+    if let Some((bytes, text)) = &record {
+        files.extend([(folder.join("record.bin"), bytes.as_slice()), (folder.join("record.toml"), text.as_bytes())]);
     }
+    write_together(&files, || if record.is_some() { Ok(()) } else { set_old_record_aside(folder) })
 }
 
-fn write_record(folder: &Path, record: &Record) -> Result<(), Problem> {
+/// A record as bytes and as text.
+fn record_forms(record: &Record) -> Result<(Vec<u8>, String), Problem> {
     let text = record_file::to_text(record).map_err(|error| Problem::new("record.toml", error.to_string()))?;
-    write_whole(folder.join("record.bin"), &record_file::to_bytes(record))?;
-    write_whole(folder.join("record.toml"), text.as_bytes())
+    Ok((record_file::to_bytes(record).to_vec(), text))
 }
 
-fn warn_of_old_record(folder: &Path) {
+/// Gives the record of an earlier run another name, since a refused run has none.
+fn set_old_record_aside(folder: &Path) -> Result<(), Problem> {
     for name in ["record.toml", "record.bin"] {
-        let path = folder.join(name);
+        let (path, aside) = (folder.join(name), folder.join(format!("{name}.earlier")));
         if path.exists() {
-            eprintln!("evenbore: {} is of an earlier run and was left as it is", path.display());
+            std::fs::rename(&path, &aside)
+                .map_err(|error| Problem::io(path.display().to_string(), "cannot rename", &error))?;
+            eprintln!("evenbore: {} is of an earlier run and is now {}", path.display(), aside.display());
         }
     }
+    Ok(())
 }
 
 /// What a person at a terminal wants to know.

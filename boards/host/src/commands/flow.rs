@@ -1,7 +1,7 @@
 //! `evenbore flow`: readings into compensated flows, row by row, by the instrument's own arithmetic.
 
 use super::{Ended, SensorOptions, json, reference_conditions};
-use clap::Args;
+use clap::{ArgGroup, Args};
 use csv::ByteRecord;
 use evenbore::flow::Flow;
 use evenbore::fluid::StoredFluid;
@@ -27,16 +27,17 @@ use std::path::PathBuf;
 
 /// Arguments of `evenbore flow`.
 #[derive(Debug, Args)]
+#[command(group(ArgGroup::new("meter").required(true).args(["record", "element"])))]
 pub struct Arguments {
     /// Readings, CSV with units in the column names; - for standard input
     readings: PathBuf,
     /// Calibration record, record.toml or record.bin
-    #[arg(long, value_name = "RECORD.toml", required_unless_present = "element", conflicts_with = "element")]
+    #[arg(long, value_name = "RECORD.toml")]
     record: Option<PathBuf>,
     /// Element file: nominal geometry, every flow flagged uncalibrated
     #[arg(long, value_name = "ELEMENT.toml")]
     element: Option<PathBuf>,
-    /// Fluid of all readings; otherwise the column fluid, or the record's fluid
+    /// Fluid of readings that name none; otherwise the record's fluid
     #[arg(long, value_name = "NAME")]
     fluid: Option<String>,
     /// Fluids of your own, TOML
@@ -85,6 +86,7 @@ pub fn run(arguments: &Arguments) -> Result<Ended, Problem> {
     let mut table = Table::open(&arguments.readings)?;
     let plan = ReadingsPlan::bind(&table)?;
     let mut meters = Meters::new(arguments, &origin, &fluids);
+    meters.check_options()?;
     let mut results = Results::create(arguments, &table)?;
     let mut first = true;
     let watched = std::io::stderr().is_terminal() && arguments.out.as_os_str() != "-";
@@ -151,9 +153,24 @@ impl<'a> Meters<'a> {
         Self { arguments, origin, fluids, made: Vec::new() }
     }
 
+    /// Finds fault with the options before anything is written.
+    fn check_options(&mut self) -> Result<(), Problem> {
+        let stated = self.origin.record.as_ref().map_or(SensorUncertainty::COMMON, |record| record.sensors);
+        let sensors = self.arguments.sensors.over(stated);
+        sensors.check().map_err(|error| Problem::new(self.arguments.sensors.names(), error.to_string()))?;
+        let Some(name) = self.arguments.fluid.as_deref() else { return Ok(()) };
+        let meter = self.make(name).map_err(|message| Problem::new("--fluid", message))?;
+        self.made.push((name.to_owned(), meter));
+        Ok(())
+    }
+
     fn of(&mut self, row: &Row<'_>, plan: &ReadingsPlan, named: Option<&str>) -> Result<&Meter<'a>, Problem> {
-        let wanted = self.arguments.fluid.as_deref().or(named).or(self.origin.fluid().map(StoredFluid::name));
         let column = plan.fluid_column().unwrap_or(0);
+        let asked = self.arguments.fluid.as_deref();
+        if let (Some(asked), Some(said)) = (asked, named.filter(|&said| asked.is_some_and(|asked| asked != said))) {
+            return Err(row.problem(column, format!("the reading is on {said}, --fluid says {asked}")));
+        }
+        let wanted = named.or(asked).or(self.origin.fluid().map(StoredFluid::name));
         let Some(name) = wanted else {
             return Err(row.problem(column, "no fluid: add a column fluid, or name it with --fluid"));
         };

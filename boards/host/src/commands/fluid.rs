@@ -2,6 +2,8 @@
 
 use super::{Ended, fluid_build, json, print};
 use clap::{Args, Subcommand};
+use evenbore::Element;
+use evenbore::double::Conditions;
 use evenbore::fluid::{Phase, StoredFluid, catalogue};
 use evenbore::quantity::{AbsolutePressure, RelativeHumidity, Temperature};
 use evenbore::status::Refusal;
@@ -228,9 +230,18 @@ fn properties(arguments: &ShowArguments, fluid: &StoredFluid) -> Shown {
         viscosity: viscosity.map(|mu| mu.as_pascal_seconds()),
         kinematic_viscosity: viscosity.zip(density).map(|(mu, rho)| mu.kinematic(rho).as_square_metres_per_second()),
         density: density.map(|rho| rho.as_kilograms_per_cubic_metre()),
-        u_viscosity_rel: fluid.u_viscosity(),
+        u_viscosity_rel: fluid.u_viscosity_at(t).hypot(u_of_water(arguments, fluid)),
         status: found.map_or_else(|refusal| refusal.to_string(), |_| "good".into()),
     }
+}
+
+/// Relative standard uncertainty of viscosity from the water of air whose humidity is given.
+fn u_of_water(arguments: &ShowArguments, fluid: &StoredFluid) -> f32 {
+    let at = |humidity: f64| {
+        let any = Element::other(1.0, 0.0).ok()?;
+        Conditions::new(&any, fluid, arguments.temperature, arguments.pressure, Some(humidity)).ok()
+    };
+    arguments.relative_humidity.and_then(at).map_or(0.0, |conditions| conditions.u_viscosity_of_water() as f32)
 }
 
 fn show_text(shown: &Shown) -> String {
@@ -251,6 +262,13 @@ fn show_text(shown: &Shown) -> String {
 fn outside(fluid: &StoredFluid, status: &str) -> Problem {
     let [t_low, t_high] = fluid.temperature_range().map(Temperature::as_celsius);
     let [p_low, p_high] = fluid.pressure_range().map(AbsolutePressure::as_kilopascals);
+    if status == Refusal::HUMIDITY_INVALID.to_string() {
+        let message = format!(
+            "{status}: a relative humidity belongs to air and lies within 0 to 100 % at -20 to 60 C, the fluid is {}",
+            fluid.name()
+        );
+        return Problem::new("fluid show", message);
+    }
     let message = format!(
         "{status}: {} is stored for {t_low:.2} to {t_high:.2} C and {p_low} to {p_high} kPa absolute",
         fluid.name()

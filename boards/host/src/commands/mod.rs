@@ -56,6 +56,38 @@ pub struct UncertainParts {
 }
 
 impl SensorOptions {
+    /// The options that were given.
+    pub fn names(&self) -> String {
+        let given = [
+            self.u_pressure_drop.map(|_| "--u-pressure-drop"),
+            self.u_temperature.map(|_| "--u-temperature"),
+            self.u_line_pressure.map(|_| "--u-line-pressure"),
+        ];
+        given.into_iter().flatten().collect::<Vec<_>>().join(", ")
+    }
+
+    /// Where the uncertainties come from when `otherwise` fills in what no option gives.
+    pub fn origin(&self, otherwise: &SensorUncertainty) -> String {
+        let parts = |absolute: f32, relative: f32| match (absolute > 0.0, relative > 0.0) {
+            (true, true) => format!("{absolute} Pa, {} %", 100.0 * relative),
+            (true, false) => format!("{absolute} Pa"),
+            _ => format!("{} %", 100.0 * relative),
+        };
+        let drop = parts(otherwise.pressure_drop_pa, otherwise.pressure_drop_rel);
+        let line = parts(otherwise.line_pressure_pa, otherwise.line_pressure_rel);
+        let all = [
+            (self.u_pressure_drop.is_some(), format!("{drop} of pressure drop")),
+            (self.u_temperature.is_some(), format!("{} K", otherwise.temperature_k)),
+            (self.u_line_pressure.is_some(), format!("{line} of line pressure")),
+        ];
+        let assumed: Vec<&str> = all.iter().filter(|(given, _)| !given).map(|(_, text)| text.as_str()).collect();
+        match assumed.len() {
+            0 => "as stated on the command line".into(),
+            3 => format!("assumed ({})", assumed.join(", ")),
+            _ => format!("as stated on the command line, otherwise assumed ({})", assumed.join(", ")),
+        }
+    }
+
     /// The sensors: what the options say over what `otherwise` says.
     pub fn over(&self, otherwise: SensorUncertainty) -> SensorUncertainty {
         let mut sensors = otherwise;

@@ -30,7 +30,7 @@ pub struct ElementFile {
     pub serial: String,
     /// Shape of the channels and their size across the flow.
     pub shape: Shape,
-    /// Channels in parallel; 1 where an element of another shape does not say.
+    /// Channels in parallel; 1 where plates, whose width is the total one, or another shape do not say.
     pub count: u32,
     /// Length of a channel along the flow, mm.
     pub length_mm: f64,
@@ -143,11 +143,23 @@ fn sizes(keys: &Section<'_>, shape: usize) -> Result<Shape, Problem> {
     match shape {
         0 => Ok(Shape::RoundTubes { bore_mm: keys.number("bore_mm", NARROW)? }),
         1 => plates(keys),
-        _ => Ok(Shape::Other {
-            hydraulic_diameter_mm: keys.optional_number("hydraulic_diameter_mm", NARROW)?,
-            open_area_mm2: keys.optional_number("open_area_mm2", AREA)?,
-        }),
+        _ => other(keys),
     }
+}
+
+/// Reads the sizes of another shape: both, or neither.
+fn other(keys: &Section<'_>) -> Result<Shape, Problem> {
+    let (diameter, area) = ("hydraulic_diameter_mm", "open_area_mm2");
+    for (given, absent) in [(diameter, area), (area, diameter)] {
+        if keys.has(given) && !keys.has(absent) {
+            let message = format!("stands without {absent}: give both, for the Reynolds number, or neither");
+            return Err(keys.problem(given, message));
+        }
+    }
+    Ok(Shape::Other {
+        hydraulic_diameter_mm: keys.optional_number(diameter, NARROW)?,
+        open_area_mm2: keys.optional_number(area, AREA)?,
+    })
 }
 
 /// Reads the sizes of parallel plates.
@@ -160,9 +172,17 @@ fn plates(keys: &Section<'_>) -> Result<Shape, Problem> {
     Ok(Shape::ParallelPlates { gap_mm, width_mm })
 }
 
-/// Reads the number of channels, which an element of another shape need not state.
+/// Reads the number of channels, which only round tubes have to state.
 fn count(keys: &Section<'_>, shape: usize) -> Result<u32, Problem> {
-    if SHAPES[shape] == "other" && !keys.has("count") { Ok(1) } else { keys.count("count", COUNT) }
+    if SHAPES[shape] != "round-tubes" && !keys.has("count") {
+        return Ok(1);
+    }
+    let count = keys.count("count", COUNT)?;
+    if SHAPES[shape] == "parallel-plates" && count != 1 {
+        let message = format!("{count} is not 1: width_mm is the total width of all slots, so leave count out");
+        return Err(keys.problem("count", message));
+    }
+    Ok(count)
 }
 
 /// Reads the serial number.

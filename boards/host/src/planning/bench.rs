@@ -9,6 +9,7 @@ use crate::planning::state::State;
 use evenbore::Element;
 use evenbore::calibration::Quality;
 use evenbore::fluid::StoredFluid;
+use evenbore::quantity::Temperature;
 use evenbore::reading::SensorUncertainty;
 use evenbore::status::Refusal;
 
@@ -96,10 +97,15 @@ impl Bench<'_> {
         Sample::new(&setup, &self.point(line, drop, errors)?)
     }
 
+    /// Relative standard uncertainty of the fluid's viscosity at the plan's temperature.
+    fn u_viscosity(&self) -> f64 {
+        f64::from(self.fluid.u_viscosity_at(Temperature::from_kelvin(self.state.temperature as f32)))
+    }
+
     /// What a fit to these samples says of the element; absent when they cannot fix the coefficients.
     pub fn quality(&self, samples: &[Sample]) -> Option<Quality> {
         let nominal = Some([self.element.a(), self.element.b()].map(f64::from));
-        let solution = best_fit(samples, nominal, f64::from(self.fluid.u_viscosity())).ok()?;
+        let solution = best_fit(samples, nominal, self.u_viscosity()).ok()?;
         Some(quality(&solution, samples))
     }
 }

@@ -71,6 +71,17 @@ pub fn coverage(calibration: &Calibration) -> String {
     }
 }
 
+/// The state at which the uncertainties hold.
+pub fn state(calibration: &Calibration) -> String {
+    let at = &calibration.state;
+    let (celsius, kilopascals) =
+        (numbers::fixed(at.temperature - 273.15, 1), numbers::fixed(at.line_pressure / 1e3, 1));
+    let humidity =
+        at.relative_humidity.map(|rh| format!(" and a relative humidity of {}\u{a0}%", numbers::fixed(100.0 * rh, 0)));
+    let pressure = format!("{celsius}\u{a0}°C, {kilopascals}\u{a0}kPa line pressure");
+    format!("{pressure}{}", humidity.unwrap_or_default())
+}
+
 /// Where the scale of the type A uncertainty comes from.
 pub fn basis(calibration: &Calibration) -> &'static str {
     match calibration.uncertainty_basis.as_str() {

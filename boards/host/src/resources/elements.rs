@@ -54,7 +54,7 @@ pub fn describe(file: &ElementFile) -> Vec<(String, String)> {
     sizes.into_iter().map(|(name, value)| (name.into(), value)).collect()
 }
 
-/// The text of an element file, as [`ElementFile::read`] takes it.
+/// The text of an element file, as [`ElementFile::read`] takes it; slots between plates become one of their total width.
 ///
 /// ```
 /// use evenbore_bench::input::{element_file::{ElementFile, Shape}, toml_text::TomlText};
@@ -82,7 +82,12 @@ pub fn as_toml(file: &ElementFile) -> String {
         }
     };
     let serial = toml::Value::String(file.serial.clone());
-    let mut text = format!("serial = {serial}\nshape = \"{shape}\"\ncount = {}\n", file.count);
+    let mut text = format!("serial = {serial}\nshape = \"{shape}\"\n");
+    text += &match (file.shape, file.count) {
+        (Shape::ParallelPlates { .. }, 1) => String::new(),
+        (Shape::ParallelPlates { .. }, slots) => format!("# The width is that of {slots} slots together.\n"),
+        (_, count) => format!("count = {count}\n"),
+    };
     let further = [
         ("length_mm", file.length_mm),
         ("expansion_per_K", file.expansion_per_k),
