@@ -151,8 +151,7 @@ instructions, not cycles. Flash is `.text` and `.rodata` over an image that does
 ";
 
 /// What was learned on the way to the table.
-const NOTES: &str = "\
-
+const NOTES: &str = "
 ## Why not less
 
 - New conditions interpolate seven stored curves. In single precision a curve costs 15 instructions on the M4F, 420 on
