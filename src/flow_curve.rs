@@ -3,7 +3,7 @@
 //! At fixed conditions the complete law is a smooth function of the pressure drop alone. `g = q_V/dP` is sampled by
 //! [`Conditions::sample`] at the Chebyshev nodes of six segments (five octaves below the curve's end and the rest down
 //! to zero, so that the root's curvature near small drops is met), degree six each, and kept as 32-bit fixed point. A
-//! sample then costs eight 32-bit products and no root, exponential, division or floating-point operation, on machines
+//! sample then costs eight 32-bit products and no root, exponential, division or floating-point arithmetic, on machines
 //! with and without a floating-point unit alike; the bits are the same on all of them. It is a choice that the record
 //! names (`Arithmetic::Curve`), since its bits differ from those of single precision.
 //!

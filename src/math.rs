@@ -5,8 +5,7 @@
 //!
 //! Nothing else in the crate calls a function of either library, so the same bits come out on every machine.
 //! `micromath` serves where only a seed is wanted: its bare `sqrt` is wrong by up to 6 %, and two Newton steps
-//! bring it to 2e-6 (asserted in `tests/accuracy.rs`), which is harmless in a slip correction of at most a few
-//! percent and in an uncertainty.
+//! bring it to 2e-6 (asserted in `tests/accuracy.rs`), which is harmless in an uncertainty.
 
 use core::ops::{Add, Div, Mul, Neg, Sub};
 
@@ -221,7 +220,7 @@ pub(crate) fn exp10(value: f64) -> f64 {
 
 /// Square root to 2e-6 relative on the device: `micromath`'s seed and two Newton steps.
 ///
-/// Used for the thermal speed in the slip correction and for the root of a variance. Valid for positive normal
+/// Used for the root of a variance. Valid for positive normal
 /// numbers; zero gives about 1e-19. Public so that its stated accuracy can be tested.
 pub fn quick_root(value: f32) -> f32 {
     Real::quick_root(value)
