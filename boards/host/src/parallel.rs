@@ -24,7 +24,10 @@ pub fn each<T: Send>(count: usize, work: impl Fn(usize) -> T + Sync) -> Vec<T> {
     };
     let mut all: Vec<(usize, T)> = scope(|scope| {
         let running: Vec<_> = (0..workers).map(|_| scope.spawn(run)).collect();
-        running.into_iter().flat_map(|worker| worker.join().unwrap_or_else(|why| std::panic::resume_unwind(why))).collect()
+        running
+            .into_iter()
+            .flat_map(|worker| worker.join().unwrap_or_else(|why| std::panic::resume_unwind(why)))
+            .collect()
     });
     all.sort_by_key(|(i, _)| *i);
     all.into_iter().map(|(_, result)| result).collect()

@@ -110,14 +110,16 @@ fn gases(rig: Rig, extent: Extent) -> Programme<'static> {
 
 fn water(extent: Extent) -> Programme<'static> {
     let rig = Rig::tubes("tubes, bore 0.5 mm, L 150 mm", 40, [0.5, 150.0], 15e3);
-    let temperatures: &[f64] = if extent == Extent::Few { &[278.15, 333.15] } else { &[278.15, 288.15, 303.15, 318.15, 333.15] };
+    let temperatures: &[f64] =
+        if extent == Extent::Few { &[278.15, 333.15] } else { &[278.15, 288.15, 303.15, 318.15, 333.15] };
     liquid(rig, catalogue::WATER.fluid(), "water, 5 to 60 C", "water, 20 C", temperatures, extent)
 }
 
 /// Oil: the cold runs leave B open, so three points are taken hot.
 fn oil_programme(oil: &StoredFluid, extent: Extent) -> Programme<'_> {
     let rig = Rig::tubes("tubes, bore 1 mm, L 200 mm", 20, [1.0, 200.0], 60e3);
-    let temperatures: &[f64] = if extent == Extent::Few { &[283.15, 353.15] } else { &[283.15, 298.15, 313.15, 333.15, 353.15] };
+    let temperatures: &[f64] =
+        if extent == Extent::Few { &[283.15, 353.15] } else { &[283.15, 298.15, 313.15, 333.15, 353.15] };
     let mut programme = liquid(rig, oil, "ISO VG 32 oil, 10 to 80 C", "the oil, 20 C and 80 C", temperatures, extent);
     programme.points.extend([0.3, 0.6, 1.0].map(|share| [353.15, share * programme.rig.full_scale]));
     programme
@@ -204,7 +206,8 @@ pub fn workshop_oil() -> StoredFluid {
 
 /// The rows as a Markdown table.
 pub fn markdown(rows: &[Row]) -> String {
-    let mut text = String::from("| element | calibrated on | used on | cases | worst | rms |\n|---|---|---|---|---|---|\n");
+    let mut text =
+        String::from("| element | calibrated on | used on | cases | worst | rms |\n|---|---|---|---|---|---|\n");
     for row in rows {
         writeln!(
             text,
