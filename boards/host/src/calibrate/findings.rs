@@ -58,7 +58,9 @@ pub fn diagnose(run: &Run<'_>) -> Result<Vec<Finding>> {
     findings.extend(geometry(run, explained));
     findings.extend(prior_used(run));
     findings.extend(suspiciously_good(run)?);
-    findings.extend(widened(run));
+    if !findings.iter().any(|found| found.refuses) {
+        findings.extend(widened(run));
+    }
     findings.sort_by_key(|finding| !finding.refuses);
     Ok(findings)
 }
