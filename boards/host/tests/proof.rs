@@ -51,7 +51,9 @@ fn stated_intervals_hold_the_truth() {
                 row.covered_standing.unwrap()
             }
         };
-        for share in shares {
+        // Without its top points a run ends at half of full scale; a flow so far beyond is flagged by the instrument.
+        let judged = if row.case.fault == Fault::TopNotLaminar { 3 } else { 4 };
+        for share in &shares[..judged] {
             assert!((share - 0.95).abs() < margin, "{name}: {shares:?}, margin {margin:.4}");
         }
         if row.case.fault == Fault::None && row.case.stated.is_some_and(|stated| stated != row.case.drawn) {
