@@ -361,7 +361,7 @@ fn flow_that_is_not_laminar_is_named() -> Outcome {
     };
     let sheet = Sheet::bench()?.change(DROP, |_, drop| drop * rise(drop));
     let found = assert_refused(&sheet, "not-laminar")?;
-    assert_eq!(found["findings"][0]["points"], serde_json::json!([8, 9, 10, 11]));
+    assert_eq!(found["findings"][0]["points"], serde_json::json!([8, 9, 10, 11, 12]));
     let single = sheet.keep(|_, i| i < 8);
     assert_eq!(assert_refused(&single, "not-laminar")?["findings"][0]["points"], serde_json::json!([8, 9]));
     Ok(())

@@ -58,7 +58,9 @@ pub fn diagnose(run: &Run<'_>) -> Result<Vec<Finding>> {
     findings.extend(geometry(run, explained));
     findings.extend(prior_used(run));
     findings.extend(suspiciously_good(run)?);
-    findings.extend(widened(run));
+    if !findings.iter().any(|found| found.refuses) {
+        findings.extend(widened(run));
+    }
     findings.sort_by_key(|finding| !finding.refuses);
     Ok(findings)
 }
@@ -109,7 +111,7 @@ fn beyond_laminar(run: &Run<'_>) -> Option<Vec<u64>> {
 fn laminar_limit(lines: Vec<u64>, refuses: bool) -> Finding {
     let message = if refuses {
         "The pressure drop rises off the laminar law at these points: the flow is no longer laminar there, or \
-         something grows with flow that the law does not know"
+         something grows with flow that the law does not know (the lowest is named for standing next to them)"
     } else {
         "These points lie above Re 1800, where the law is not held to be laminar, although they fit"
     };
