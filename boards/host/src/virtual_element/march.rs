@@ -17,9 +17,7 @@ use super::grid::Grid;
 use super::inlet::{Entrance, Place, enter};
 use super::profile::{Carried, Profile};
 use super::refused::Refused;
-use super::section::Section;
 use super::step::{Past, Step};
-use super::substance::Reference;
 use nalgebra::DVector;
 
 /// Mean velocity over the speed of sound up to which the solution is given.
