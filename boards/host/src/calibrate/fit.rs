@@ -87,11 +87,7 @@ pub struct Solution {
 impl Solution {
     /// Effective degrees of freedom of the fit's uncertainty: infinite when it was stated beforehand.
     pub fn type_a_degrees_of_freedom(&self) -> f64 {
-        if self.basis == Basis::Stated && self.widening == 1.0 {
-            f64::INFINITY
-        } else {
-            self.degrees_of_freedom as f64
-        }
+        if self.basis == Basis::Stated && self.widening == 1.0 { f64::INFINITY } else { self.degrees_of_freedom as f64 }
     }
 
     /// The same solution with its covariance multiplied by chi-squared per degree of freedom (Birge 1932) where a

@@ -128,7 +128,8 @@ struct Truth {
 impl Truth {
     fn new() -> Result<Self, String> {
         let rig = Rig::tubes("bundle", 100, [0.5, 100.0], 5e3);
-        let [full_flow, _] = rig.flow(NITROGEN.fluid(), STATE, rig.full_scale).map_err(|refused| refused.to_string())?;
+        let [full_flow, _] =
+            rig.flow(NITROGEN.fluid(), STATE, rig.full_scale).map_err(|refused| refused.to_string())?;
         let mut truth = Self { rig, uses: Vec::new(), full_flow };
         truth.uses = truth.at(&AT)?;
         Ok(truth)
@@ -297,9 +298,8 @@ pub fn markdown(rows: &[Row]) -> String {
     let mut text = String::from(
         "| calibration | refused | stands | of all runs, as they are | of those that stand | U |\n|---|---|---|---|---|---|\n",
     );
-    let percent = |values: [f64; 4], digits: usize| {
-        values.map(|value| format!("{:.digits$}", 100.0 * value)).join(", ")
-    };
+    let percent =
+        |values: [f64; 4], digits: usize| values.map(|value| format!("{:.digits$}", 100.0 * value)).join(", ");
     for row in rows {
         writeln!(
             text,

@@ -44,7 +44,8 @@ pub struct Rig {
 impl Rig {
     /// `count` tubes of a bore and a length in millimetres, as drawn; the made ones are a little wider.
     pub fn tubes(name: &'static str, count: u32, [bore, length]: [f64; 2], full_scale: f64) -> Self {
-        let drawn = Element::round_tubes(count, Length::from_millimetres(bore as f32), Length::from_millimetres(length as f32));
+        let drawn =
+            Element::round_tubes(count, Length::from_millimetres(bore as f32), Length::from_millimetres(length as f32));
         let made = Section::RoundTube { bore: bore * 1e-3 * DELIVERED };
         Self::new(name, drawn, (made, count, length), full_scale)
     }

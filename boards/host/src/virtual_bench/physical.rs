@@ -49,7 +49,10 @@ pub fn impossible(fluid: &StoredFluid, temperature: f64, pressure: f64, outlet: 
         return Some(format!("water is ice at {celsius:.2} C"));
     }
     if name == "water" && outlet < water_vapour_pressure(temperature) {
-        return Some(format!("water boils at {celsius:.2} C and {:.3} kPa: two phases leave the element", outlet / 1e3));
+        return Some(format!(
+            "water boils at {celsius:.2} C and {:.3} kPa: two phases leave the element",
+            outlet / 1e3
+        ));
     }
     match vapour_pressure(name, temperature) {
         Some(limit) if pressure >= limit => Some(format!(

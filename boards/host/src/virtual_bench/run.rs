@@ -70,7 +70,8 @@ struct Happening {
 pub fn simulate(scenario: &Scenario, progress: &dyn Fn(usize, usize)) -> Result<Simulated, Problem> {
     let fluids = Fluids::open(scenario.fluids.as_deref())?;
     let element = element(scenario).map_err(|refused| Problem::new(&scenario.file, refused.to_string()))?;
-    let mut simulated = Simulated { rows: Vec::new(), columns: scenario.sensors.map(|s| s.is_some()), interpolation_error: 0.0 };
+    let mut simulated =
+        Simulated { rows: Vec::new(), columns: scenario.sensors.map(|s| s.is_some()), interpolation_error: 0.0 };
     let mut readers = Readers::new(scenario);
     let mut start = 0.0;
     for (i, segment) in scenario.segments.iter().enumerate() {
@@ -137,15 +138,16 @@ fn happen(
     moments: &[Moment],
 ) -> Result<(Vec<Happening>, Option<f64>, f64), String> {
     let declared = fluids.find(&segment.fluid)?;
-    let first = Moment { time: 0.0, drive: 0.0, temperature: segment.temperature[0], pressure: segment.line_pressure[0] };
-    let outlet = |moment: &Moment| {
-        moment.pressure - if segment.drive == Drive::PressureDrop { moment.drive } else { 0.0 }
-    };
+    let first =
+        Moment { time: 0.0, drive: 0.0, temperature: segment.temperature[0], pressure: segment.line_pressure[0] };
+    let outlet =
+        |moment: &Moment| moment.pressure - if segment.drive == Drive::PressureDrop { moment.drive } else { 0.0 };
     let reason = |moment: &Moment| impossible(declared, moment.temperature, moment.pressure, outlet(moment));
     if let Some(why) = moments.iter().chain([&first]).find_map(reason) {
         return Err(why);
     }
-    let water = segment.relative_humidity.map(|share| share * water_vapour_pressure(first.temperature) / first.pressure);
+    let water =
+        segment.relative_humidity.map(|share| share * water_vapour_pressure(first.temperature) / first.pressure);
     let moist = water.map(moist_air).transpose().map_err(|error| error.to_string())?;
     if let Some(x) = water {
         let wet = moments.iter().find(|m| x * m.pressure > 1.0005 * water_vapour_pressure(m.temperature));
@@ -170,7 +172,8 @@ fn happen(
         let fluid = name.map_or(Ok(usual), |name| fluids.find(name))?;
         let of_fluid: Vec<usize> = (0..moments.len()).filter(|&i| wrong(&moments[i]) == name).collect();
         let chosen: Vec<Moment> = of_fluid.iter().map(|&i| moments[i]).collect();
-        let (found, worst) = flows(scenario, segment, element, fluid, &chosen).map_err(|refused| why(&refused, fluid))?;
+        let (found, worst) =
+            flows(scenario, segment, element, fluid, &chosen).map_err(|refused| why(&refused, fluid))?;
         error = error.max(worst);
         for (i, happening) in of_fluid.into_iter().zip(found) {
             happenings[i] = Some(happening);

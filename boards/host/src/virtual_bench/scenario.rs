@@ -311,7 +311,9 @@ fn fault(keys: &Section<'_>, sensors: &[Option<Sensor>; 5]) -> Result<Fault, Pro
         return Err(keys.problem("sensor", format!("the scenario has no table [sensors.{}]", Channel::NAMES[i])));
     }
     if KINDS[kind] == "leak" && sensors[4].is_none() {
-        return Err(keys.problem("kind", "a leak shows against a reference: a table [sensors.reference_flow] is missing"));
+        return Err(
+            keys.problem("kind", "a leak shows against a reference: a table [sensors.reference_flow] is missing")
+        );
     }
     let from = keys.optional_number("from_s", MOMENT)?.unwrap_or(0.0);
     let to = keys.optional_number("to_s", MOMENT)?.unwrap_or(f64::INFINITY);

@@ -53,7 +53,8 @@ impl Sensor {
         let deviate = random.normal();
         let off = felt - about;
         let noise = self.noise.hypot(self.noise_rel * off) * deviate;
-        let read = (off * (1.0 + self.gain) + self.zero + self.drift * time + noise + about).clamp(self.range[0], self.range[1]);
+        let read = (off * (1.0 + self.gain) + self.zero + self.drift * time + noise + about)
+            .clamp(self.range[0], self.range[1]);
         if self.resolution > 0.0 { about + ((read - about) / self.resolution).round() * self.resolution } else { read }
     }
 }
