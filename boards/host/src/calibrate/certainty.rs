@@ -1,7 +1,7 @@
 //! What the calibrated meter is worth over its range: the instrument's own statement, and where it comes from.
 
 use crate::calibrate::fit::CommonShift;
-use crate::calibrate::outcome::{BudgetRow, MeanState, UncertaintyRow};
+use crate::calibrate::outcome::{BudgetRow, CommonEffect, MeanState, UncertaintyRow};
 use crate::statistics::distributions::coverage_factor;
 use crate::statistics::welch::{Component, effective_dof};
 use evenbore::calibration::Cause;
@@ -129,4 +129,24 @@ fn budget_at(
         degrees_of_freedom: (part == "fit" && dof.is_finite()).then_some(dof),
     };
     lines.into_iter().filter(|line| line.2 > 0.0).map(row).collect()
+}
+
+/// A cause's name and unit for people and files.
+pub fn effect(shift: &CommonShift) -> CommonEffect {
+    CommonEffect {
+        name: shift.cause.name().into(),
+        u: shift.u,
+        unit: unit_of(shift.cause).into(),
+        effect_a: shift.shift[0],
+        effect_b: shift.shift[1],
+    }
+}
+
+/// Unit of a common cause's uncertainty.
+fn unit_of(cause: Cause) -> &'static str {
+    match cause {
+        Cause::Temperature => "K",
+        Cause::PressureDropZero => "Pa",
+        _ => "rel",
+    }
 }

@@ -1,14 +1,14 @@
 //! The whole run judged: the fit chosen, the record made, the outcome put together.
 
-use crate::calibrate::certainty::{budget, uncertainty_rows};
+use crate::calibrate::certainty::{budget, effect, uncertainty_rows};
 use crate::calibrate::findings::{self, Run};
 use crate::calibrate::fit::{self, Prior, Solution, UNFIXED_B};
-use crate::calibrate::outcome::{Calibration, CommonEffect, Finding, GeometryRatio, MeanState, Range, ResidualRow};
+use crate::calibrate::outcome::{Calibration, Finding, GeometryRatio, MeanState, Range, ResidualRow};
 use crate::calibrate::samples::{Sample, Setup, Slope, Source};
 use crate::input::points::{Point, Points};
 use crate::input::problem::Problem;
 use crate::input::uncertain::Parts;
-use evenbore::calibration::{Cause, CommonPart, Quality};
+use evenbore::calibration::{CommonPart, Quality};
 use evenbore::fluid::StoredFluid;
 use evenbore::quantity::Temperature;
 use evenbore::reading::SensorUncertainty;
@@ -349,26 +349,6 @@ fn outcome(
         uncertainty: uncertainty_rows(record, &state, largest_drop, dof),
         residuals: residuals(points, order, run, all),
         budget: budget(record, &state, largest_drop, &solution.common, dof),
-    }
-}
-
-/// A cause's name and unit for people and files.
-fn effect(shift: &fit::CommonShift) -> CommonEffect {
-    CommonEffect {
-        name: shift.cause.name().into(),
-        u: shift.u,
-        unit: unit_of(shift.cause).into(),
-        effect_a: shift.shift[0],
-        effect_b: shift.shift[1],
-    }
-}
-
-/// Unit of a common cause's uncertainty.
-pub fn unit_of(cause: Cause) -> &'static str {
-    match cause {
-        Cause::Temperature => "K",
-        Cause::PressureDropZero => "Pa",
-        _ => "rel",
     }
 }
 

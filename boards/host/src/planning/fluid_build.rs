@@ -4,7 +4,7 @@ pub use crate::input::fluids_file::USUAL_RESIDUAL as USUAL_LIMIT;
 use crate::input::fluids_file::{self, DeclaredFluid, NamedFluid};
 use crate::input::problem::Problem;
 use crate::input::toml_text::TomlText;
-use crate::resources::fluids::{check_rows, stored};
+use crate::resources::fluids::{check_compressibility, check_rows, stored};
 use evenbore::double::Properties;
 use evenbore::fluid::StoredFluid;
 use serde::Serialize;
@@ -95,6 +95,7 @@ impl Declaration<'_> {
         let stanza = self.stanza();
         let declared = fluids_file::read(&TomlText::new("the table's own lines", &stanza), folder)?;
         let Some(named) = declared.first() else { return Err(Problem::new(self.data, "declares no fluid")) };
+        check_compressibility(named)?;
         let fluid = stored(named).map_err(|error| Problem::new(self.data, error.to_string()))?;
         let (rows, residuals) = compare(named, &fluid);
         for (residual, what) in residuals.iter().zip(["viscosity", "density"]) {

@@ -20,7 +20,7 @@ pub fn table(question: &Question<'_>, prediction: &Prediction) -> String {
     let humid = state.humidity.map(|h| decimal(h, |h| 100.0 * h, |pct| pct / 100.0));
     let mut text = String::from("pressure_drop_Pa,temperature_C,line_pressure_kPa,");
     text.push_str(if humid.is_some() { "relative_humidity_pct," } else { "" });
-    text.push_str("volume_flow_L_min,mass_flow_g_min,standard_flow_L_min,reynolds,u_volume_flow_rel,status,");
+    text.push_str("volume_flow_L_min,mass_flow_g_min,standard_flow_L_min,reynolds,u_volume_flow_rel,u_mass_flow_rel,u_standard_flow_rel,status,");
     text.push_str("coverage_factor,expanded_rel\n");
     let t = decimal(state.temperature, |t| t - 273.15, |c| c + 273.15);
     let p = decimal(state.line_pressure, |p| p / 1e3, |kpa| kpa * 1e3);
@@ -29,13 +29,15 @@ pub fn table(question: &Question<'_>, prediction: &Prediction) -> String {
         let flow = &row.flow;
         let scaled = |si: f32| shortest((f64::from(si) * LITRES_PER_MINUTE) as f32);
         let standard = flow.standard.map(|q| scaled(q.as_cubic_metres_per_second())).unwrap_or_default();
+        let u_standard = flow.standard.map(|_| shortest(flow.standard_uncertainty.combined())).unwrap_or_default();
         text += &format!(
-            "{},{t},{p},{humid}{},{},{standard},{},{},{},{:.4},{:.6}\n",
+            "{},{t},{p},{humid}{},{},{standard},{},{},{},{u_standard},{},{:.4},{:.6}\n",
             shortest(row.pressure_drop as f32),
             scaled(flow.volume.as_cubic_metres_per_second()),
             scaled(flow.mass.as_kilograms_per_second()),
             shortest(flow.reynolds),
             shortest(flow.uncertainty.combined()),
+            shortest(flow.mass_uncertainty.combined()),
             flow.status,
             row.coverage_factor,
             row.expanded(),

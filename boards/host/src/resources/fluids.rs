@@ -43,6 +43,7 @@ impl Fluids {
             if catalogue::find(&fluid.name).is_some() {
                 return Err(problem("a fluid of the catalogue has this name: choose another".into()));
             }
+            check_compressibility(fluid)?;
             let built = stored(fluid).map_err(|error| problem(error.to_string()))?;
             check_rows(fluid, &built).map(|()| built)
         };
@@ -171,7 +172,7 @@ impl Table<'_> {
 /// # Errors
 /// Names the line, the value and the limit.
 pub fn check_rows(declared: &NamedFluid, fluid: &StoredFluid) -> Result<(), Problem> {
-    let DeclaredFluid::Table { data, rows, molar_mass_g_mol, pressure_kpa, residual_limit } = &declared.fluid else {
+    let DeclaredFluid::Table { data, rows, pressure_kpa, residual_limit, .. } = &declared.fluid else {
         return Ok(());
     };
     let file = data.display().to_string();
@@ -190,7 +191,20 @@ pub fn check_rows(declared: &NamedFluid, fluid: &StoredFluid) -> Result<(), Prob
             );
             return Err(Problem::new(file, message).at_line(row.line));
         }
-        let Some(grams) = molar_mass_g_mol else { continue };
+    }
+    Ok(())
+}
+
+/// Refuses a gas's table whose densities do not go with its molar mass and pressure, before anything is built of it.
+///
+/// # Errors
+/// The first row with an impossible compressibility factor.
+pub fn check_compressibility(declared: &NamedFluid) -> Result<(), Problem> {
+    let DeclaredFluid::Table { data, rows, molar_mass_g_mol: Some(grams), pressure_kpa, .. } = &declared.fluid else {
+        return Ok(());
+    };
+    let pressure = pressure_kpa * 1e3;
+    for row in rows {
         let z = pressure * grams * 1e-3 / (MOLAR_GAS_CONSTANT * row.temperature * row.density);
         if !(LEAST_Z..=LARGEST_Z).contains(&z) {
             let message = format!(
@@ -198,7 +212,7 @@ pub fn check_rows(declared: &NamedFluid, fluid: &StoredFluid) -> Result<(), Prob
                  compressibility factor of {z:.3} (limits {LEAST_Z} to {LARGEST_Z}): one of the three is in the wrong unit",
                 declared.name, row.density
             );
-            return Err(Problem::new(file, message).at_line(row.line));
+            return Err(Problem::new(data.display().to_string(), message).at_line(row.line));
         }
     }
     Ok(())
