@@ -54,6 +54,14 @@ for features in "${FEATURE_SETS[@]}"; do
     cargo clippy --quiet --locked --package evenbore --lib --no-default-features --features "$features"
 done
 
+stage "every combination of the library's features"
+names=(defmt hal link serde store)
+for ((set = 0; set < 32; set++)); do
+    features=""
+    for ((i = 0; i < 5; i++)); do (((set >> i) & 1)) && features+="${names[i]} "; done
+    cargo check --quiet --locked --package evenbore --lib --no-default-features --features "$features"
+done
+
 stage "library without an operating system"
 for target in "${BARE_TARGETS[@]}"; do
     for features in "${FEATURE_SETS[@]}"; do
