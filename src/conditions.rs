@@ -164,7 +164,7 @@ pub(crate) struct Limits {
     pub standing: Status,
 }
 
-/// A flow and its status; [`Flow`] adds the uncertainty.
+/// A flow and its status; [`Flow`](crate::flow::Flow) adds the uncertainty.
 #[derive(Debug, Clone, Copy, PartialEq)]
 #[cfg_attr(feature = "defmt", derive(defmt::Format))]
 pub struct Sample {

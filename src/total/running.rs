@@ -38,7 +38,7 @@ impl Total {
 ///
 /// Each step is exact but for what lies below 2^-64 of a sub-unit, and errs towards zero: after 20 years at 10 Hz
 /// (6.3e9 steps) less than 1e-9 of a sub-unit is missing (asserted in `tests/signal_total.rs`). Counters roll over at
-/// [`ROLLOVER`] and count that.
+/// [`ROLLOVER`](super::ROLLOVER) and count that.
 ///
 /// ```
 /// use evenbore::quantity::{MassFlow, VolumeFlow};
