@@ -22,13 +22,14 @@ const TORN: [Torn; 3] = [Torn::Whole, Torn::Partial, Torn::Unreadable];
 fn record(date: u32) -> Record {
     let element = Element::round_tubes(120, Length::from_millimetres(0.44), Length::from_millimetres(120.0)).unwrap();
     let quality = Quality::nominal(element.a(), element.b());
-    let mut record = Record::new("EB-0042", 20_260_101, element, *NITROGEN.fluid(), quality).unwrap();
-    record.events = date; // tells one record from another
-    record
+    // The number is told by the date: days 1 to 28, months, years from 2000.
+    let (day, month, year) = (date % 28 + 1, date / 28 % 12 + 1, 2000 + date / 336);
+    Record::new("EB-0042", year * 10_000 + month * 100 + day, element, *NITROGEN.fluid(), quality).unwrap()
 }
 
 fn date(record: &Record) -> u32 {
-    record.events
+    let (day, month, year) = (record.date % 100, record.date / 100 % 100, record.date / 10_000);
+    (year - 2000) * 336 + (month - 1) * 28 + day - 1
 }
 
 /// What is read after a start.
