@@ -276,7 +276,8 @@ proptest! {
     fn pt100_inverts_itself(t in -200.0_f32..850.0) {
         let there = Pt100::default().resistance(Temperature::from_celsius(t));
         let back = Pt100::default().temperature(there).unwrap();
-        // Near 850 C a kelvin's last digit is 1.2e-4, halved three times over, and a resistance's is worth 1e-4 K.
-        prop_assert!((back.as_celsius() - t).abs() < 3e-4);
+        // Near 850 C the last digit of a temperature is 1.2e-4 K, and one of a resistance is worth 1e-4 K: a few roundings.
+        let error = (back.as_celsius() - t).abs();
+        prop_assert!(error < 4.5e-4, "{t}: {error}");
     }
 }

@@ -101,5 +101,6 @@ pub const PT100_KELVIN: f64 = 1.5e-4;
 /// Thermistor: single against double precision, K. Measured: 4.4e-5, one and a half last digits of a temperature.
 pub const THERMISTOR_KELVIN: f64 = 5e-5;
 
-/// Straight transfer function against exact arithmetic, relative to the larger end value.
-pub const TRANSFER: f64 = 2e-7;
+/// Straight transfer function against exact arithmetic, relative to the larger end value: four roundings of a span that
+/// is up to twice that value.
+pub const TRANSFER: f64 = 5e-7;
